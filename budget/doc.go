@@ -1,0 +1,3 @@
+// Package budget holds numbers that carry their history: a value, signed shifts
+// by named cause, flags, and what it rests on; and the algebra of limits.
+package budget
