@@ -1,0 +1,170 @@
+package config
+
+import (
+	"bytes"
+	"fmt"
+	"reflect"
+	"strconv"
+	"strings"
+
+	"lacuna/spectrum/frame"
+)
+
+// Resolved is the survey as TOML with everything in it: no [defaults], no
+// catalogue, each default written out and marked "# default" (or with where else
+// it came from). Loading it gives the same survey.
+func (s *Survey) Resolved() []byte {
+	var b bytes.Buffer
+	fmt.Fprintf(&b, "# Resolved by lacuna; a mark says who set what you did not.\n")
+	section(&b, "[survey]", "survey", s, s.by)
+	for i := range s.Sightlines {
+		b.WriteByte('\n')
+		s.Sightlines[i].write(&b)
+	}
+	return b.Bytes()
+}
+
+func (x *Sightline) write(b *bytes.Buffer) {
+	section(b, "[[sightline]]", "sightline", x, x.by)
+	for i := range x.Spectra {
+		section(b, "[[sightline.spectrum]]", "sightline.spectrum", &x.Spectra[i], x.Spectra[i].by)
+	}
+	for i := range x.Lines {
+		section(b, "[[sightline.line]]", "sightline.line", &x.Lines[i], x.Lines[i].by)
+	}
+	if x.Hydrogen != nil {
+		section(b, "[sightline.hydrogen]", "sightline.hydrogen", x.Hydrogen, x.Hydrogen.by)
+	}
+	for i := range x.Columns {
+		section(b, "[[sightline.column]]", "sightline.column", &x.Columns[i], x.Columns[i].by)
+	}
+	for i := range x.Adopt {
+		section(b, "[[sightline.adopt]]", "sightline.adopt", &x.Adopt[i], x.Adopt[i].by)
+	}
+}
+
+func section(b *bytes.Buffer, head, table string, src any, by origins) {
+	fmt.Fprintln(b, head)
+	for _, e := range settings(table, src, by) {
+		fmt.Fprintf(b, "%s = %s", e.Key, e.Value)
+		if e.By != "" {
+			fmt.Fprintf(b, "  # %s", e.By)
+		}
+		b.WriteByte('\n')
+	}
+}
+
+// A Setting is one key as resolved.
+type Setting struct {
+	Where string `json:"where"` // "survey", "sightline 2 (Lantern 2): line 3"
+	Key   string `json:"key"`
+	Value string `json:"value"` // as TOML
+	By    string `json:"by"`    // "" the user, else "default", "defaults", "catalogue" or the key it was taken from
+}
+
+// Defaults lists every setting that the user did not make: built-in defaults,
+// and what was taken from another key.
+func (s *Survey) Defaults() []Setting {
+	var out []Setting
+	add := func(where, table string, src any, by origins) {
+		for _, e := range settings(table, src, by) {
+			if e.By != "" && e.By != "defaults" && e.By != "catalogue" {
+				e.Where = where
+				out = append(out, e)
+			}
+		}
+	}
+	add("survey", "survey", s, s.by)
+	for i := range s.Sightlines {
+		x := &s.Sightlines[i]
+		where := place(i, x.Name)
+		add(where, "sightline", x, x.by)
+		for j := range x.Spectra {
+			add(nth(where+": spectrum", j), "sightline.spectrum", &x.Spectra[j], x.Spectra[j].by)
+		}
+		for j := range x.Lines {
+			add(nth(where+": line", j), "sightline.line", &x.Lines[j], x.Lines[j].by)
+		}
+		for j := range x.Columns {
+			add(nth(where+": column", j), "sightline.column", &x.Columns[j], x.Columns[j].by)
+		}
+		for j := range x.Adopt {
+			add(nth(where+": adopt", j), "sightline.adopt", &x.Adopt[j], x.Adopt[j].by)
+		}
+	}
+	return out
+}
+
+// settings prints the fields of src that say something.
+func settings(table string, src any, by origins) []Setting {
+	v := reflect.ValueOf(src).Elem()
+	var out []Setting
+	for _, k := range keysOf(table) {
+		f, ok := fieldOf(v, k.Name)
+		if !ok || once(table, k.Name) {
+			continue
+		}
+		if _, set := by[k.Name]; !set && f.IsZero() && k.Default == "" && !k.Required {
+			continue // absent
+		}
+		out = append(out, Setting{Key: k.Name, Value: value(f), By: by[k.Name]})
+	}
+	return out
+}
+
+// once names the keys that have done their work when a survey is loaded.
+func once(table, key string) bool {
+	switch table + "." + key {
+	case "survey.catalogue", "survey.catalogue_ignore", "sightline.override", "sightline.lines":
+		return true
+	case "growth.table":
+		return true
+	}
+	return false
+}
+
+// value prints a field as TOML.
+func value(f reflect.Value) string {
+	switch f.Kind() {
+	case reflect.Pointer:
+		return value(f.Elem())
+	case reflect.String:
+		if k, ok := f.Interface().(frame.Kind); ok {
+			return quote(FrameWord(k))
+		}
+		return quote(f.String())
+	case reflect.Bool:
+		return strconv.FormatBool(f.Bool())
+	case reflect.Int:
+		return strconv.FormatInt(f.Int(), 10)
+	case reflect.Float64:
+		s := strconv.FormatFloat(f.Float(), 'g', -1, 64)
+		if !strings.ContainsAny(s, ".e") {
+			s += ".0"
+		}
+		return s
+	case reflect.Slice, reflect.Array:
+		parts := make([]string, f.Len())
+		for i := range parts {
+			parts[i] = value(f.Index(i))
+		}
+		return "[" + strings.Join(parts, ", ") + "]"
+	case reflect.Struct:
+		var parts []string
+		for i := range f.NumField() {
+			key := f.Type().Field(i).Tag.Get("toml")
+			g := f.Field(i)
+			if g.IsZero() && g.Kind() == reflect.String || g.IsZero() && key == "err" && f.Type() == reflect.TypeFor[Quantity]() {
+				continue
+			}
+			parts = append(parts, key+" = "+value(g))
+		}
+		return "{" + strings.Join(parts, ", ") + "}"
+	}
+	panic("config: no TOML for " + f.Type().String())
+}
+
+// quote writes a text that badText accepts: no control characters to escape.
+func quote(s string) string {
+	return `"` + strings.NewReplacer(`\`, `\\`, `"`, `\"`).Replace(s) + `"`
+}
