@@ -65,4 +65,5 @@ type Number struct {
 	Flag   Flag
 	Conf   float64 // of a limit, in σ
 	From   []Ref
+	Behind *Number // of our own upper limit: the value ± σ behind it, linear, may be negative; nil otherwise
 }
