@@ -10,12 +10,14 @@ import (
 	"lacuna/spectrum/frame"
 )
 
+const resolvedHead = "# Everything resolved; a mark behind a key says where it came from, if not from its own place."
+
 // Resolved is the survey as TOML with everything in it: no [defaults], no
 // catalogue, each default written out and marked "# default" (or with where else
 // it came from). Loading it gives the same survey.
 func (s *Survey) Resolved() []byte {
 	var b bytes.Buffer
-	fmt.Fprintf(&b, "# Resolved by lacuna; a mark says who set what you did not.\n")
+	fmt.Fprintln(&b, resolvedHead)
 	section(&b, "[survey]", "survey", s, s.by)
 	for i := range s.Sightlines {
 		b.WriteByte('\n')

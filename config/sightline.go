@@ -253,11 +253,7 @@ func (l *loader) sightlines(s *Survey, def common, rows []row, own []map[string]
 	byName := map[string]int{}
 	for _, r := range rows {
 		x := start()
-		n := len(r.l.errs)
-		r.l.layer(&x, def, r.where, r.m, "catalogue")
-		for _, e := range r.l.errs[n:] {
-			l.add(e)
-		}
+		l.layer(&x, def, r.where, r.m, "catalogue")
 		if _, ok := byName[x.Name]; !ok {
 			byName[x.Name] = len(s.Sightlines)
 		}

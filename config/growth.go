@@ -1,0 +1,301 @@
+package config
+
+import (
+	"bytes"
+	"fmt"
+	"path/filepath"
+	"slices"
+	"strings"
+
+	"lacuna/internal/oops"
+	"lacuna/internal/table"
+)
+
+// A Growth is a batch for the curve of growth: measured widths of many sightlines.
+type Growth struct {
+	File       string     `json:"-"`
+	Dir        string     `json:"-"`
+	Name       string     `json:"name" toml:"name"`
+	FSet       string     `json:"f_set" toml:"f_set"`
+	LineTable  string     `json:"line_table,omitempty" toml:"line_table"`
+	BRange     [2]float64 `json:"b_range" toml:"b_range"` // km/s
+	LimitSigma float64    `json:"limit_sigma" toml:"limit_sigma"`
+	Table      string     `json:"table,omitempty" toml:"table"`
+	Sightlines []GrowthSightline
+
+	by origins
+}
+
+// A GrowthSightline is one star's widths.
+type GrowthSightline struct {
+	Name   string        `json:"name" toml:"name"`
+	Note   string        `json:"note,omitempty" toml:"note"`
+	BRange [2]float64    `json:"b_range" toml:"b_range"` // km/s
+	Widths []GrowthWidth `json:"widths"`
+	ShareB [][]string    `json:"share_b,omitempty"` // species or levels with one b each group
+
+	by origins
+}
+
+// A GrowthWidth is one measured width, in mÅ as written: W ± Err, or an upper
+// limit at Sigma.
+type GrowthWidth struct {
+	Line  string   `json:"line" toml:"line"` // canonical name
+	WmA   *float64 `json:"W_mA,omitempty" toml:"W_mA"`
+	Err   float64  `json:"err_mA,omitempty" toml:"err_mA"`     // 1σ, with WmA
+	Limit float64  `json:"limit_mA,omitempty" toml:"limit_mA"` // without WmA
+	Sigma float64  `json:"sigma,omitempty" toml:"sigma"`       // of Limit
+	Note  string   `json:"note,omitempty" toml:"note"`
+
+	by origins
+}
+
+// Angstrom returns the width and its 1σ error, or the limit and its level, in Å.
+func (w GrowthWidth) Angstrom() (width, err float64, limit bool, sigma float64) {
+	if w.WmA == nil {
+		return w.Limit * 1e-3, 0, true, w.Sigma
+	}
+	return *w.WmA * 1e-3, w.Err * 1e-3, false, 0
+}
+
+// LoadGrowth reads a growth-curve batch. Every mistake in it is reported.
+func LoadGrowth(path string) (*Growth, error) {
+	m, err := readTOML(path, "lacuna new")
+	if err != nil {
+		return nil, err
+	}
+	return parseGrowth(path, m)
+}
+
+func parseGrowth(path string, m map[string]any) (*Growth, error) {
+	l := &loader{file: path}
+	l.topKeys(m, "growth", "sightline")
+	g := &Growth{File: path, Dir: filepath.Dir(path), by: origins{}}
+	l.defaults("growth", g, g.by)
+	if t := l.table("", "growth", m); t != nil {
+		l.required("growth", "growth", t)
+		l.fill("growth", "growth", t, g, g.by, "")
+	} else if m["growth"] == nil {
+		l.bad("growth", `add [growth] with name = "…"`, "missing")
+	}
+	tab := l.growthLines(g)
+	places := l.growthTable(g, tab)
+	fromTable := len(g.Sightlines)
+	for i, t := range l.tables("", "sightline", m) {
+		places = l.growthSightline(g, i, t, fromTable, places, tab)
+	}
+	if len(g.Sightlines) == 0 && len(l.errs) == 0 {
+		l.bad("sightline", "add [[sightline]] with widths, or a table", "none")
+	}
+	var names []string
+	for i := range g.Sightlines {
+		x := &g.Sightlines[i]
+		names = append(names, x.Name)
+		if len(x.Widths) == 0 {
+			l.bad(places[i], "add [[sightline.width]]", "no width")
+		}
+		for j, w := range x.Widths {
+			for _, o := range x.Widths[:j] {
+				if o.Line == w.Line {
+					l.bad(places[i], "keep one of them, or their mean", "two widths of %s", w.Line)
+				}
+			}
+		}
+	}
+	l.checkNames(places, names)
+	if err := l.err(); err != nil {
+		return nil, err
+	}
+	return g, nil
+}
+
+func (l *loader) growthSightline(g *Growth, i int, m map[string]any, fromTable int, places []string, tab finder) []string {
+	name, _ := m["name"].(string)
+	where := place(i, name)
+	l.required(where, "growth.sightline", m)
+	at0 := slices.IndexFunc(g.Sightlines[:fromTable], func(x GrowthSightline) bool { return name != "" && x.Name == name })
+	if at0 < 0 {
+		g.Sightlines = append(g.Sightlines, GrowthSightline{BRange: g.BRange, by: origins{"b_range": "growth"}})
+		places = append(places, where)
+		at0 = len(g.Sightlines) - 1
+	}
+	x := &g.Sightlines[at0]
+	l.fill(where, "growth.sightline", m, x, x.by, "")
+	for j, t := range l.tables(where, "width", m) {
+		p := nth(at(where, "width"), j)
+		w := GrowthWidth{by: origins{}}
+		l.required(p, "growth.sightline.width", t)
+		l.fill(p, "growth.sightline.width", t, &w, w.by, "")
+		l.growthWidth(p, g, &w, tab)
+		x.Widths = append(x.Widths, w)
+	}
+	for j, t := range l.tables(where, "share_b", m) {
+		p := nth(at(where, "share_b"), j)
+		var s struct {
+			Species []string `toml:"species"`
+		}
+		l.required(p, "growth.sightline.share_b", t)
+		l.fill(p, "growth.sightline.share_b", t, &s, nil, "")
+		l.shareB(at(p, "species"), x, s.Species)
+	}
+	return places
+}
+
+func (l *loader) shareB(where string, x *GrowthSightline, species []string) {
+	if len(species) == 1 {
+		l.bad(where, "name two or more", "one species shares b with nobody")
+	}
+	for i, s := range species {
+		l.species(where, s)
+		if slices.Contains(species[:i], s) {
+			l.bad(where, "keep one of them", "%s is there twice", s)
+		}
+		for _, other := range x.ShareB {
+			if slices.Contains(other, s) {
+				l.bad(where, "join the two groups", "%s already shares b with %s", s, strings.Join(other, ", "))
+			}
+		}
+	}
+	if len(species) > 0 {
+		x.ShareB = append(x.ShareB, species)
+	}
+}
+
+func (l *loader) growthWidth(where string, g *Growth, w *GrowthWidth, tab finder) {
+	if w.Line != "" && tab != nil {
+		if a, err := tab.Find(w.Line); err != nil {
+			l.wrap(at(where, "line"), err)
+		} else {
+			w.Line = a.Name
+		}
+	}
+	switch {
+	case (w.WmA == nil) == (w.Limit == 0):
+		l.bad(where, "give W_mA and err_mA, or limit_mA", "needs either a width or a limit")
+	case w.WmA != nil && w.Err == 0:
+		l.bad(at(where, "err_mA"), "add the 1σ error", "missing")
+	case w.WmA == nil && w.Err != 0:
+		l.bad(at(where, "err_mA"), "give W_mA with it, also where nothing was detected, or leave it out", "a limit has no error")
+	case w.WmA != nil && w.Sigma != 0:
+		l.bad(at(where, "sigma"), "leave it out", "only a limit has a level")
+	case w.WmA == nil && w.Sigma == 0:
+		w.Sigma, w.by["sigma"] = g.LimitSigma, "limit_sigma"
+	}
+}
+
+// growthTable makes sightlines of a table of widths, in order of first appearance.
+func (l *loader) growthTable(g *Growth, tab finder) []string {
+	if g.Table == "" {
+		return nil
+	}
+	t, err := table.Read(join(g.Dir, g.Table))
+	if err != nil {
+		l.add(err)
+		return nil
+	}
+	cols := map[string]*table.Column{}
+	for _, name := range []string{"sightline", "line", "W_mA", "W_err_mA", "W_kind"} {
+		c, err := t.Col(name)
+		if err == nil {
+			cols[name] = c
+			continue
+		}
+		if name != "W_kind" {
+			l.add(err)
+			continue
+		}
+		for _, c := range t.Cols { // a slip of the pen would turn limits into values
+			if n := oops.Nearest(c.Name, []string{name}, 1); len(n) > 0 && !strings.HasPrefix(c.Name, "W_err") {
+				l.bad(at(show(g.Table), "column "+c.Name), "name it W_kind, or give it a name less like it", "is this W_kind?")
+			}
+		}
+	}
+	if len(l.errs) > 0 {
+		return nil
+	}
+	var places []string
+	index := map[string]int{}
+	for i := range t.Rows() {
+		where := g.Table + " " + t.Where(i)
+		cell := func(col string) map[string]any {
+			if c := cols[col]; c != nil {
+				if s, ok := t.String(c, i); ok && s != "" {
+					return map[string]any{col: s}
+				}
+			}
+			return nil
+		}
+		name, _ := cell("sightline")["sightline"].(string)
+		line, _ := cell("line")["line"].(string)
+		if name == "" || line == "" {
+			l.bad(where, "fill in sightline and line", "a row without a name")
+			continue
+		}
+		j, ok := index[name]
+		if !ok {
+			j = len(g.Sightlines)
+			index[name] = j
+			x := GrowthSightline{BRange: g.BRange, by: origins{"b_range": "growth"}}
+			l.fill(where, "growth.sightline", map[string]any{"name": name}, &x, x.by, "catalogue")
+			g.Sightlines = append(g.Sightlines, x)
+			places = append(places, where)
+		}
+		m := map[string]any{"line": line}
+		kind, _ := cell("W_kind")["W_kind"].(string)
+		keys := map[string]string{"W_mA": "W_mA", "W_err_mA": "err_mA"}
+		switch kind {
+		case "", "value", "marginal":
+		case "upper":
+			keys = map[string]string{"W_mA": "limit_mA"}
+		default:
+			l.bad(at(where, "W_kind"), "one of value, marginal, upper", "%s is not known", show(kind))
+			continue
+		}
+		for _, col := range []string{"W_mA", "W_err_mA"} {
+			key, wanted := keys[col]
+			x, ok, err := t.Float(cols[col], i)
+			switch {
+			case err != nil:
+				l.add(err)
+			case ok && wanted:
+				m[key] = x
+			case wanted:
+				l.bad(at(where, col), "fill it in, or leave the row out", "missing")
+			}
+		}
+		w := GrowthWidth{by: origins{}}
+		n := len(l.errs)
+		l.fill(where, "growth.sightline.width", m, &w, w.by, "catalogue")
+		if len(l.errs) == n {
+			l.growthWidth(where, g, &w, tab)
+		}
+		g.Sightlines[j].Widths = append(g.Sightlines[j].Widths, w)
+	}
+	return places
+}
+
+// Path is where a file named in the batch lies.
+func (g *Growth) Path(name string) string { return join(g.Dir, name) }
+
+// Resolved is the batch as TOML with everything in it; see Survey.Resolved.
+func (g *Growth) Resolved() []byte {
+	var b bytes.Buffer
+	fmt.Fprintln(&b, resolvedHead)
+	section(&b, "[growth]", "growth", g, g.by)
+	for i := range g.Sightlines {
+		x := &g.Sightlines[i]
+		b.WriteByte('\n')
+		section(&b, "[[sightline]]", "growth.sightline", x, x.by)
+		for j := range x.Widths {
+			section(&b, "[[sightline.width]]", "growth.sightline.width", &x.Widths[j], x.Widths[j].by)
+		}
+		for _, s := range x.ShareB {
+			list := make([]string, len(s))
+			for k := range s {
+				list[k] = quote(s[k])
+			}
+			fmt.Fprintf(&b, "[[sightline.share_b]]\nspecies = [%s]\n", strings.Join(list, ", "))
+		}
+	}
+	return b.Bytes()
+}
