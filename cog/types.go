@@ -41,6 +41,9 @@ type Contour struct {
 // A LineResult is one point against the fitted curve.
 type LineResult struct {
 	Line       string  `json:"line"`
+	Column     int     `json:"column"` // of Result.LogN
+	Wave       float64 `json:"wave"`   // Å, vacuum
+	F          float64 `json:"f"`      // oscillator strength
 	W, Err     float64 // Å
 	Limit      bool    `json:"limit,omitempty"`
 	Model      float64 `json:"model"`      // Å
