@@ -3,8 +3,6 @@ package config
 import (
 	"fmt"
 	"strings"
-
-	"lacuna/internal/oops"
 )
 
 func nth(what string, i int) string { return fmt.Sprintf("%s %d", what, i+1) }
@@ -60,7 +58,7 @@ func (l *loader) checkHydrogen(where string, h *Hydrogen) {
 }
 
 func (l *loader) checkColumn(where string, c *Column, s *Sightline) {
-	l.species(at(where, "species"), c.Species)
+	c.Species = l.species(at(where, "species"), c.Species)
 	if c.Kind == "value" && c.LogNErr == 0 {
 		l.bad(at(where, "logN_err"), `add its 1σ error in dex, or kind = "upper" or "lower"`, "missing")
 	}
@@ -81,7 +79,7 @@ func (l *loader) checkColumn(where string, c *Column, s *Sightline) {
 }
 
 func (l *loader) checkAdopt(where string, a *Adopt, s *Sightline) {
-	l.species(at(where, "species"), a.Species)
+	a.Species = l.species(at(where, "species"), a.Species)
 	switch {
 	case (a.Method == "") == (a.LogN == nil):
 		l.bad(where, "give one of them", "needs either a method or logN")
@@ -192,26 +190,4 @@ func (l *loader) checkNames(places, names []string) {
 		}
 		by[key] = i
 	}
-}
-
-// species refuses what is no species of atoms or of the line table's molecules.
-func (l *loader) species(where, name string) {
-	if name == "" {
-		return // missing, and said so
-	}
-	if true {
-		return
-	}
-	var known []string
-	for _, k := range carriers() {
-		if k == name || strings.SplitN(k, " ", 2)[0] == name {
-			return
-		}
-		known = append(known, k)
-	}
-	fix := `write it like "Ca II", "C II*", "CH" or "CN N=1"`
-	if n := oops.Nearest(name, known, 2); len(n) > 0 {
-		fix = "did you mean " + strings.Join(n, " or ") + "? " + fix
-	}
-	l.bad(where, fix, "%s is not a species", show(name))
 }

@@ -12,6 +12,7 @@ import (
 	"unicode"
 	"unicode/utf8"
 
+	"lacuna/atomic"
 	"lacuna/internal/oops"
 	"lacuna/spectrum/frame"
 )
@@ -22,6 +23,7 @@ const maxMistakes = 20
 // A loader collects the mistakes of one file.
 type loader struct {
 	file string
+	tab  *atomic.Table // of transitions; nil when it could not be had
 	errs []error
 	said map[string]bool // a mistake in [defaults] shows once, not once a sightline
 }

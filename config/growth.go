@@ -22,6 +22,7 @@ type Growth struct {
 	LimitSigma float64    `json:"limit_sigma" toml:"limit_sigma"`
 	Table      string     `json:"table,omitempty" toml:"table"`
 	Sightlines []GrowthSightline
+	Notes      []string `json:"-"` // what the reader of results must know of the loading
 
 	by origins
 }
@@ -78,11 +79,11 @@ func parseGrowth(path string, m map[string]any) (*Growth, error) {
 	} else if m["growth"] == nil {
 		l.bad("growth", `add [growth] with name = "…"`, "missing")
 	}
-	tab := l.growthLines(g)
-	places := l.growthTable(g, tab)
+	l.tab = l.lineTable("growth", g.Dir, &g.FSet, g.LineTable)
+	places := l.growthTable(g)
 	fromTable := len(g.Sightlines)
 	for i, t := range l.tables("", "sightline", m) {
-		places = l.growthSightline(g, i, t, fromTable, places, tab)
+		places = l.growthSightline(g, i, t, fromTable, places)
 	}
 	if len(g.Sightlines) == 0 && len(l.errs) == 0 {
 		l.bad("sightline", "add [[sightline]] with widths, or a table", "none")
@@ -94,13 +95,7 @@ func parseGrowth(path string, m map[string]any) (*Growth, error) {
 		if len(x.Widths) == 0 {
 			l.bad(places[i], "add [[sightline.width]]", "no width")
 		}
-		for j, w := range x.Widths {
-			for _, o := range x.Widths[:j] {
-				if o.Line == w.Line {
-					l.bad(places[i], "keep one of them, or their mean", "two widths of %s", w.Line)
-				}
-			}
-		}
+		l.checkWidths(g, places[i], x)
 	}
 	l.checkNames(places, names)
 	if err := l.err(); err != nil {
@@ -109,7 +104,7 @@ func parseGrowth(path string, m map[string]any) (*Growth, error) {
 	return g, nil
 }
 
-func (l *loader) growthSightline(g *Growth, i int, m map[string]any, fromTable int, places []string, tab finder) []string {
+func (l *loader) growthSightline(g *Growth, i int, m map[string]any, fromTable int, places []string) []string {
 	name, _ := m["name"].(string)
 	where := place(i, name)
 	l.required(where, "growth.sightline", m)
@@ -126,7 +121,7 @@ func (l *loader) growthSightline(g *Growth, i int, m map[string]any, fromTable i
 		w := GrowthWidth{by: origins{}}
 		l.required(p, "growth.sightline.width", t)
 		l.fill(p, "growth.sightline.width", t, &w, w.by, "")
-		l.growthWidth(p, g, &w, tab)
+		l.growthWidth(p, g, &w)
 		x.Widths = append(x.Widths, w)
 	}
 	for j, t := range l.tables(where, "share_b", m) {
@@ -146,7 +141,8 @@ func (l *loader) shareB(where string, x *GrowthSightline, species []string) {
 		l.bad(where, "name two or more", "one species shares b with nobody")
 	}
 	for i, s := range species {
-		l.species(where, s)
+		s = l.species(where, s)
+		species[i] = s
 		if slices.Contains(species[:i], s) {
 			l.bad(where, "keep one of them", "%s is there twice", s)
 		}
@@ -161,9 +157,9 @@ func (l *loader) shareB(where string, x *GrowthSightline, species []string) {
 	}
 }
 
-func (l *loader) growthWidth(where string, g *Growth, w *GrowthWidth, tab finder) {
-	if w.Line != "" && tab != nil {
-		if a, err := tab.Find(w.Line); err != nil {
+func (l *loader) growthWidth(where string, g *Growth, w *GrowthWidth) {
+	if w.Line != "" && l.tab != nil {
+		if a, err := l.tab.Find(w.Line); err != nil {
 			l.wrap(at(where, "line"), err)
 		} else {
 			w.Line = a.Name
@@ -183,8 +179,25 @@ func (l *loader) growthWidth(where string, g *Growth, w *GrowthWidth, tab finder
 	}
 }
 
+// checkWidths refuses a width given twice and notes lines measured twice.
+func (l *loader) checkWidths(g *Growth, where string, x *GrowthSightline) {
+	for j, w := range x.Widths {
+		for _, o := range x.Widths[:j] {
+			if o.Line != w.Line {
+				continue
+			}
+			w1, e1, u1, _ := o.Angstrom()
+			if w2, e2, u2, _ := w.Angstrom(); w1 == w2 && e1 == e2 && u1 == u2 {
+				l.bad(where, "keep one of them", "the same width of %s is there twice", w.Line)
+				continue
+			}
+			g.Notes = append(g.Notes, fmt.Sprintf("%s: two widths of %s count as independent", x.Name, w.Line))
+		}
+	}
+}
+
 // growthTable makes sightlines of a table of widths, in order of first appearance.
-func (l *loader) growthTable(g *Growth, tab finder) []string {
+func (l *loader) growthTable(g *Growth) []string {
 	if g.Table == "" {
 		return nil
 	}
@@ -267,7 +280,7 @@ func (l *loader) growthTable(g *Growth, tab finder) []string {
 		n := len(l.errs)
 		l.fill(where, "growth.sightline.width", m, &w, w.by, "catalogue")
 		if len(l.errs) == n {
-			l.growthWidth(where, g, &w, tab)
+			l.growthWidth(where, g, &w)
 		}
 		g.Sightlines[j].Widths = append(g.Sightlines[j].Widths, w)
 	}

@@ -85,6 +85,8 @@ func parse(path string, m map[string]any) (*Survey, error) {
 	} else if m["survey"] == nil {
 		l.bad("survey", `add [survey] with name = "…"`, "missing")
 	}
+	l.checkScale(s.Scale)
+	l.tab = l.lineTable("survey", s.Dir, &s.FSet, s.LineTable)
 	def := l.common(l.table("", "defaults", m))
 	own := l.tables("", "sightline", m)
 	rows := l.catalogue(s)
@@ -92,9 +94,9 @@ func parse(path string, m map[string]any) (*Survey, error) {
 		l.bad("sightline", "add [[sightline]] with a name and a spectrum, or a catalogue", "none")
 	}
 	places := l.sightlines(s, def, rows, own)
-	if tab := l.lineTable(s); tab != nil {
+	if l.tab != nil {
 		for i := range s.Sightlines {
-			l.finish(s, &s.Sightlines[i], def, places[i], tab)
+			l.finish(s, &s.Sightlines[i], def, places[i])
 		}
 	}
 	if err := l.err(); err != nil {

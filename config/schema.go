@@ -67,6 +67,7 @@ var schema = []KeyDoc{
 
 	{Table: "sightline.line", Name: "name", Type: Text, Required: true, Meaning: "The transition: \"Na I 5889.95\", \"Ca II K\", \"CN R(0)\"."},
 	{Table: "sightline.line", Name: "use", Type: Switch, Default: `true`, Meaning: "false: leave it out, although [defaults] or lines name it."},
+	{Table: "sightline.line", Name: "required", Type: Switch, Meaning: "true: an error where no spectrum holds the line; false: a warning. True for lines that the sightline names itself, false for those of [defaults], where not given."},
 	{Table: "sightline.line", Name: "window", Type: Pair, Unit: "km/s", Range: "[-30000, 30000]", Meaning: "Integration range in the frame of the results; the sightline's velocity where not given."},
 	{Table: "sightline.line", Name: "auto_window", Type: Switch, Meaning: "As in the sightline, for this line."},
 	{Table: "sightline.line", Name: "continuum", Type: Pairs, Unit: "km/s", Range: "[-30000, 30000]", Meaning: "Where the continuum is fitted, outside the window, on both sides of it (one side is enough for degree 0). Found automatically where not given."},

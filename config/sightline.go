@@ -99,14 +99,14 @@ func (l *loader) layer(s *Sightline, def common, where string, m map[string]any,
 
 // finish makes the lines of a sightline from the list, [[defaults.line]] and
 // [[sightline.line]], and fills in what they take from the sightline.
-func (l *loader) finish(s *Survey, x *Sightline, def common, where string, tab finder) {
+func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 	type entry struct {
 		line  atomic.Line
 		where string
 		m     map[string]any // nil: only named
 	}
 	look := func(where, name string) (atomic.Line, bool) {
-		a, err := tab.Find(name)
+		a, err := l.tab.Find(name)
 		if err != nil {
 			l.wrap(where, err)
 		}
@@ -188,7 +188,8 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string, tab f
 			x.Skipped = append(x.Skipped, ln.Name)
 			continue
 		}
-		inherit(x, &ln, set, molecule(e.line))
+		own := e.m != nil || at0 != "defaults: lines" && slices.ContainsFunc(list, func(o entry) bool { return o.line.Name == e.line.Name })
+		inherit(x, &ln, set, own, e.line.Molecule())
 		l.checkLine(e.where, x, &ln)
 		x.Lines = append(x.Lines, ln)
 	}
@@ -197,13 +198,16 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string, tab f
 }
 
 // inherit fills what a line takes from its sightline.
-func inherit(x *Sightline, ln *Line, set map[string]bool, molecule bool) {
+func inherit(x *Sightline, ln *Line, set map[string]bool, own, molecule bool) {
 	from := func(key, source string) bool {
 		if set[key] {
 			return false
 		}
 		ln.by[key] = source
 		return true
+	}
+	if from("required", "default") {
+		ln.Required = own
 	}
 	if from("window", "velocity") {
 		ln.Window = x.Velocity

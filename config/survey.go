@@ -104,7 +104,8 @@ type Names struct {
 type Line struct {
 	Name       string       `json:"name" toml:"name"` // canonical name of the line table
 	Use        bool         `json:"-" toml:"use"`
-	Window     [2]float64   `json:"window" toml:"window"` // km/s
+	Required   bool         `json:"required" toml:"required"` // an error where no spectrum holds it
+	Window     [2]float64   `json:"window" toml:"window"`     // km/s
 	AutoWindow bool         `json:"auto_window" toml:"auto_window"`
 	Continuum  [][2]float64 `json:"continuum,omitempty" toml:"continuum"` // km/s; nil: automatic
 	Degree     int          `json:"degree" toml:"degree"`                 // −1: automatic
@@ -116,6 +117,10 @@ type Line struct {
 
 	by origins
 }
+
+// Inherited reports whether the line is wanted only where a spectrum holds it, as
+// lines from [defaults] are.
+func (l Line) Inherited() bool { return !l.Required }
 
 // Hydrogen is what is known of hydrogen: log₁₀ cm⁻², errors in dex, nil unknown.
 // A column has either a value with its error or a maximum.
