@@ -23,11 +23,10 @@ func svg(t testing.TB, f Figure) []byte {
 	return b.Bytes()
 }
 
-func TestLineFigures(t *testing.T) {
-	for _, f := range LineFigures(lantern1(), "lantern-1") {
-		svg(t, f)
-	}
-	for _, f := range LineFigures(uv(), "lantern-2") {
-		svg(t, f)
+func TestFigures(t *testing.T) {
+	for _, r := range everything() {
+		for _, f := range Figures(r) {
+			svg(t, f)
+		}
 	}
 }

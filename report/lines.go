@@ -33,8 +33,8 @@ const (
 // flux over continuum in steps, the continuum and its placement, the integration
 // range, the pixels that carry the continuum, masked pixels, blends, and below
 // the apparent column N_a(v). Up to 12 lines share a figure; more lines make
-// more figures, stem-lines, stem-lines-2, …
-func LineFigures(r survey.Record, stem string) []Figure {
+// more figures, …-lines, …-lines-2, …
+func LineFigures(r survey.Record) []Figure {
 	all := r.Result.Widths
 	pages := (len(all) + 2*rowsAPage - 1) / (2 * rowsAPage)
 	lo, hi := velocityRange(all)
@@ -42,7 +42,7 @@ func LineFigures(r survey.Record, stem string) []Figure {
 	for k := range pages {
 		ws := all[k*len(all)/pages : (k+1)*len(all)/pages]
 		s := newStack(ws, all, lo, hi, r.Result.Frame)
-		f := Figure{Name: stem + "-lines", Title: plain(r.Name), Caption: stackCaption(r, ws, s)}
+		f := Figure{Name: figureName(r.Name, "lines"), Title: plain(r.Name), Caption: stackCaption(r, ws, s)}
 		s.title = plain(r.Name)
 		if pages > 1 {
 			f.Title += fmt.Sprintf(" (%d of %d)", k+1, pages)
@@ -258,7 +258,9 @@ func (s *stack) drawFlux(p panel, b block) {
 		room = rowHeight*float64(s.nameRows) + tickLength
 	}
 	p.Y = axis{Lo: lo, Hi: lo + (hi-lo)*s.flux()/(s.flux()-room)}
-	p.Y.Ticks = ticks(lo, hi, 4, 0.05)
+	for n := 4; n < 8 && labelled(p.Y.Ticks) < 2; n++ { // one label is no scale
+		p.Y.Ticks = ticks(lo, hi, n, 0.05)
+	}
 	if b.missing {
 		p.frame(false, false)
 		p.FillText(letters(textSize, ink, text.XCenter, text.YCenter), p.Center(), "no usable pixels")

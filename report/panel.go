@@ -161,6 +161,17 @@ func ticks(lo, hi float64, n int, margin float64) []tick {
 	return out
 }
 
+// labelled counts the ticks with a label.
+func labelled(ts []tick) int {
+	n := 0
+	for _, t := range ts {
+		if t.Label != "" {
+			n++
+		}
+	}
+	return n
+}
+
 // niceStep returns the smallest step of 1, 2 or 5 times 10ᵉˣᵖ that is not below s.
 func niceStep(s float64) (step float64, mantissa, exp int) {
 	exp = int(math.Floor(math.Log10(s)))

@@ -1,0 +1,25 @@
+package report
+
+import (
+	"lacuna/config"
+	"lacuna/survey"
+)
+
+// Figures returns every figure of one sightline: its lines, a curve of growth for
+// each species that has one, and its depletions. Their names begin with
+// config.Slug of the sightline's name, so that no two sightlines share one.
+func Figures(r survey.Record) []Figure {
+	out := LineFigures(r)
+	for _, g := range r.Result.Growth {
+		out = append(out, GrowthFigure(r.Name, g))
+	}
+	if f, ok := DepletionFigure(r); ok {
+		out = append(out, f)
+	}
+	return out
+}
+
+// figureName is the file stem of a sightline's figure.
+func figureName(sightline, what string) string {
+	return config.Slug(sightline) + "-" + what
+}
