@@ -119,14 +119,14 @@ func (p *page) row(g *grid, l layout, cells []cell, head bool) {
 		remark = wrap(cells[l.flex].text, l.wide[l.flex])
 	}
 	for i := range remark {
-		var b strings.Builder
-		b.WriteString(strings.Repeat(" ", g.indent))
+		line := strings.Repeat(" ", g.indent)
+		blank := 0 // columns of blanks that wait for something to stand after them
 		for c := range g.align {
 			if c == l.flex && l.below {
 				continue
 			}
 			if c > 0 {
-				b.WriteString(strings.Repeat(" ", gridGap))
+				blank += gridGap
 			}
 			s := ""
 			switch {
@@ -135,19 +135,24 @@ func (p *page) row(g *grid, l layout, cells []cell, head bool) {
 			case i == 0:
 				s = cells[c].text
 			}
+			s = strings.TrimRight(s, " ")
+			if s == "" {
+				blank += l.wide[c]
+				continue
+			}
 			lead := 0
 			switch {
 			case g.align[c] == 'r':
 				lead = l.wide[c] - columns(s)
-			case g.align[c] == 'n' && !head && s != "":
+			case g.align[c] == 'n' && !head:
 				a, _ := split(s)
 				lead = l.left[c] - columns(a)
 			}
-			s = strings.Repeat(" ", max(lead, 0)) + s
-			s += strings.Repeat(" ", max(l.wide[c]-columns(s), 0))
-			b.WriteString(p.paint(s, cells[c].tone))
+			lead = max(lead, 0)
+			line += strings.Repeat(" ", blank+lead) + p.paint(s, cells[c].tone)
+			blank = max(l.wide[c]-lead-columns(s), 0)
 		}
-		p.b.WriteString(strings.TrimRight(b.String(), " ") + "\n")
+		p.b.WriteString(strings.TrimRight(line, " ") + "\n")
 	}
 	if l.below && !head && cells[l.flex].text != "" {
 		p.para(strings.Repeat(" ", g.indent+4), cells[l.flex].text, cells[l.flex].tone)

@@ -26,7 +26,9 @@ func growth() cog.Result {
 	} {
 		model := cog.Width(atomic.Line{Wave: l.wave, F: l.f, Gamma: 2.7e8}, logN, b)
 		err := 0.0015
-		r := cog.LineResult{Line: l.name, Wave: l.wave, F: l.f, W: model + l.pull*err, Err: err, Model: model, Tau0: 1}
+		r := cog.LineResult{Line: l.name, Wave: l.wave, F: l.f, W: model + l.pull*err, Err: err, Model: model, Tau0: 1.497e-15 * l.f * l.wave * math.Pow(10, logN) / b}
+		r.LogNLinear = math.Log10(1.13e20 * r.W / (l.f * l.wave * l.wave))
+		r.Correction = logN - r.LogNLinear
 		if i == 1 {
 			r.Limit, r.W = true, 0.006
 		}

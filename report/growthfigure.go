@@ -177,12 +177,22 @@ func drawGrowth(c draw.Canvas, area vg.Rectangle, x axis, g cog.Result, ps []gro
 	p.growthKey(g, place)
 	for _, q := range ps {
 		place.block(p.at(q.x, q.y), 3)
-		p.drawPoint(q)
 	}
+	defer func() {
+		for _, q := range ps {
+			p.drawPoint(q)
+		}
+	}()
 	sty := letters(textSize, ink, text.XLeft, text.YBottom)
 	for _, q := range ps {
-		if at, ok := place.place(p.at(q.x, q.y), width(sty, q.name), vg.Points(textSize), 4.5); ok {
+		dot, wide := p.at(q.x, q.y), width(sty, q.name)
+		if at, far, ok := place.place(dot, wide, vg.Points(textSize), 4.5); ok {
 			p.FillText(sty, vg.Point{X: at.X, Y: at.Y - vg.Points(0.5)}, q.name)
+			if far { // a hair leads to the point
+				x := min(max(dot.X, at.X), at.X+wide)
+				y := min(max(dot.Y, at.Y), at.Y+vg.Points(textSize))
+				p.StrokeLine2(stroke(midGrey, hair), dot.X, dot.Y, x, y)
+			}
 		}
 	}
 	p.frame(false, true)
@@ -253,10 +263,10 @@ func drawResiduals(c draw.Canvas, area vg.Rectangle, x axis, ps []growthPoint) {
 	top := 2.0
 	for _, q := range ps {
 		if !q.limit && finite(q.residual) {
-			top = math.Max(top, math.Abs(q.residual))
+			top = math.Max(top, math.Abs(q.residual)+1)
 		}
 	}
-	top = math.Ceil(top) + 0.5
+	top = math.Ceil(top) + 0.3
 	p.Y = axis{Lo: -top, Hi: top, Ticks: ticks(-top, top, 3, 0.08)}
 	p.horizontal(stroke(midGrey, hair, 1, 1.5), 1)
 	p.horizontal(stroke(midGrey, hair, 1, 1.5), -1)

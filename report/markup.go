@@ -24,6 +24,7 @@ const (
 	small    = 0.72 // size of sub- and superscripts
 	raise    = 0.36 // of the full size
 	lower    = 0.18
+	apartBy  = 0.09 // what a power above an index is raised, and the index lowered, besides
 )
 
 // fonts returns the two faces in use; the first call parses them.
@@ -166,6 +167,9 @@ func set(s string, f font.Font) (out []placed, width vg.Length) {
 		if before*r.level == -1 {
 			x = start
 			before = 0
+			apart := f.Size * apartBy * vg.Length(r.level) // the two must not touch
+			out[len(out)-1].up -= apart
+			up += apart
 		} else {
 			before = r.level
 		}

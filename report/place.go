@@ -15,8 +15,9 @@ func (p *placer) block(at vg.Point, half vg.Length) {
 }
 
 // place returns the lower left corner of a box of the given size near a point,
-// and false where every place about it is taken.
-func (p *placer) place(at vg.Point, w, h, gap vg.Length) (vg.Point, bool) {
+// whether it lies so far off that it needs a leader, and false where every place
+// about the point is taken.
+func (p *placer) place(at vg.Point, w, h, gap vg.Length) (corner vg.Point, leader, ok bool) {
 	for _, far := range []vg.Length{1, 2.2, 3.6} {
 		g := gap * far
 		for _, c := range []vg.Point{
@@ -29,11 +30,12 @@ func (p *placer) place(at vg.Point, w, h, gap vg.Length) (vg.Point, bool) {
 			if box.Min.X < p.area.Min.X || box.Max.X > p.area.Max.X || box.Min.Y < p.area.Min.Y || box.Max.Y > p.area.Max.Y || p.hits(box) {
 				continue
 			}
-			p.taken = append(p.taken, box)
-			return c, true
+			const room = 1.5 // between labels
+			p.taken = append(p.taken, vg.Rectangle{Min: vg.Point{X: c.X - room, Y: c.Y - room}, Max: vg.Point{X: box.Max.X + room, Y: box.Max.Y + room}})
+			return c, far > 1, true
 		}
 	}
-	return vg.Point{}, false
+	return vg.Point{}, false, false
 }
 
 func (p *placer) hits(box vg.Rectangle) bool {

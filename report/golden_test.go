@@ -27,13 +27,3 @@ func golden(t *testing.T, name string, got []byte) {
 		t.Errorf("%s differs (go test ./report -update rewrites it); got:\n%s", path, got)
 	}
 }
-
-func TestSummary(t *testing.T) {
-	for name, o := range map[string]Options{"summary.txt": {}, "summary-ascii.txt": {ASCII: true, Width: 72}, "summary-color.txt": {Color: true}} {
-		var b bytes.Buffer
-		if err := Summary(&b, everything(), o); err != nil {
-			t.Fatal(err)
-		}
-		golden(t, name, b.Bytes())
-	}
-}
