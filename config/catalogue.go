@@ -100,7 +100,7 @@ func (l *loader) rows(s *Survey, t *table.Table) []row {
 		switch {
 		case j >= 0:
 			use[i] = &known[j]
-		case all && (len(near) == 0 || t.Has(near[0])):
+		case all && !slices.ContainsFunc(names, func(n string) bool { return slip(c.Name, n) && !t.Has(n) }):
 		default:
 			fix := "add it to catalogue_ignore in [survey] if it is not for this program"
 			if len(near) > 0 {
@@ -121,6 +121,18 @@ func (l *loader) rows(s *Survey, t *table.Table) []row {
 		out = append(out, l.row(where, t, i, use))
 	}
 	return out
+}
+
+// slip reports whether two names differ in one place only, by at most two
+// letters: a slip of the pen.
+func slip(a, b string) bool {
+	for a != "" && b != "" && a[0] == b[0] {
+		a, b = a[1:], b[1:]
+	}
+	for a != "" && b != "" && a[len(a)-1] == b[len(b)-1] {
+		a, b = a[:len(a)-1], b[:len(b)-1]
+	}
+	return len(a) <= 2 && len(b) <= 2
 }
 
 // row makes a sightline's map of one row.

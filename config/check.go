@@ -107,7 +107,7 @@ func (l *loader) checkLine(where string, x *Sightline, ln *Line) {
 	}
 	var low, high bool
 	for i, c := range ln.Continuum {
-		low, high = low || c[1] <= ln.Window[0], high || c[0] >= ln.Window[1]
+		low, high = low || c[0] < ln.Window[0], high || c[1] > ln.Window[1]
 		if !ln.AutoWindow && c[0] < ln.Window[1] && c[1] > ln.Window[0] {
 			l.bad(nth(at(where, "continuum"), i), "end it at the window", "[%g, %g] reaches into the window [%g, %g] of %s", c[0], c[1], ln.Window[0], ln.Window[1], ln.Name)
 		}

@@ -93,6 +93,15 @@ func unknownFix(table, name string, names []string) string {
 	return "known here: " + strings.Join(names, ", ")
 }
 
+// read fills a table of the user's and reports whether it holds no mistake, so
+// that its keys can be compared with each other.
+func (l *loader) read(where, table string, m map[string]any, dst any, by origins, origin string) bool {
+	n := len(l.errs)
+	l.required(where, table, m)
+	l.fill(where, table, m, dst, by, origin)
+	return len(l.errs) == n
+}
+
 // required reports the required keys of a table that are missing from m.
 func (l *loader) required(where, table string, m map[string]any) {
 	for _, k := range keysOf(table) {
@@ -205,10 +214,7 @@ func (l *loader) set(where string, k KeyDoc, x any, f reflect.Value) bool {
 		if !ok {
 			return l.wrongType(where, k, x)
 		}
-		n := len(l.errs)
-		l.required(where, k.Name, m)
-		l.fill(where, k.Name, m, f.Addr().Interface(), nil, "")
-		return len(l.errs) == n
+		return l.read(where, k.Name, m, f.Addr().Interface(), nil, "")
 	default:
 		panic("config: no field can take key " + k.Name)
 	}

@@ -7,7 +7,6 @@ import (
 	"slices"
 	"strings"
 
-	"lacuna/internal/oops"
 	"lacuna/internal/table"
 )
 
@@ -119,9 +118,9 @@ func (l *loader) growthSightline(g *Growth, i int, m map[string]any, fromTable i
 	for j, t := range l.tables(where, "width", m) {
 		p := nth(at(where, "width"), j)
 		w := GrowthWidth{by: origins{}}
-		l.required(p, "growth.sightline.width", t)
-		l.fill(p, "growth.sightline.width", t, &w, w.by, "")
-		l.growthWidth(p, g, &w)
+		if l.read(p, "growth.sightline.width", t, &w, w.by, "") {
+			l.growthWidth(p, g, &w)
+		}
 		x.Widths = append(x.Widths, w)
 	}
 	for j, t := range l.tables(where, "share_b", m) {
@@ -129,9 +128,9 @@ func (l *loader) growthSightline(g *Growth, i int, m map[string]any, fromTable i
 		var s struct {
 			Species []string `toml:"species"`
 		}
-		l.required(p, "growth.sightline.share_b", t)
-		l.fill(p, "growth.sightline.share_b", t, &s, nil, "")
-		l.shareB(at(p, "species"), x, s.Species)
+		if l.read(p, "growth.sightline.share_b", t, &s, nil, "") {
+			l.shareB(at(p, "species"), x, s.Species)
+		}
 	}
 	return places
 }
@@ -218,7 +217,7 @@ func (l *loader) growthTable(g *Growth) []string {
 			continue
 		}
 		for _, c := range t.Cols { // a slip of the pen would turn limits into values
-			if n := oops.Nearest(c.Name, []string{name}, 1); len(n) > 0 && !strings.HasPrefix(c.Name, "W_err") {
+			if slip(strings.ToLower(c.Name), "w_kind") {
 				l.bad(at(show(g.Table), "column "+c.Name), "name it W_kind, or give it a name less like it", "is this W_kind?")
 			}
 		}
@@ -277,9 +276,7 @@ func (l *loader) growthTable(g *Growth) []string {
 			}
 		}
 		w := GrowthWidth{by: origins{}}
-		n := len(l.errs)
-		l.fill(where, "growth.sightline.width", m, &w, w.by, "catalogue")
-		if len(l.errs) == n {
+		if l.read(where, "growth.sightline.width", m, &w, w.by, "catalogue") {
 			l.growthWidth(where, g, &w)
 		}
 		g.Sightlines[j].Widths = append(g.Sightlines[j].Widths, w)

@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"fmt"
 	"reflect"
+	"sort"
 	"strconv"
 	"strings"
 
@@ -58,42 +59,58 @@ func section(b *bytes.Buffer, head, table string, src any, by origins) {
 
 // A Setting is one key as resolved.
 type Setting struct {
-	Where string `json:"where"` // "survey", "sightline 2 (Lantern 2): line 3"
+	Table string `json:"table"` // "survey", "sightline.line"
 	Key   string `json:"key"`
 	Value string `json:"value"` // as TOML
 	By    string `json:"by"`    // "" the user, else "default", "defaults", "catalogue" or the key it was taken from
+	Count int    `json:"count"` // in how many places
 }
 
-// Defaults lists every setting that the user did not make: built-in defaults,
-// and what was taken from another key.
+// Defaults lists what the user did not set: built-in defaults and what was taken
+// from another key, each value once, in the order of the manual. Resolved marks
+// them in their places.
 func (s *Survey) Defaults() []Setting {
 	var out []Setting
-	add := func(where, table string, src any, by origins) {
+	seen := map[Setting]int{}
+	add := func(table string, src any, by origins) {
 		for _, e := range settings(table, src, by) {
-			if e.By != "" && e.By != "defaults" && e.By != "catalogue" {
-				e.Where = where
+			if e.By == "" || e.By == "defaults" || e.By == "catalogue" {
+				continue
+			}
+			e.Table = table
+			i, ok := seen[e]
+			if !ok {
+				i = len(out)
+				seen[e] = i
 				out = append(out, e)
 			}
+			out[i].Count++
 		}
 	}
-	add("survey", "survey", s, s.by)
+	add("survey", s, s.by)
 	for i := range s.Sightlines {
 		x := &s.Sightlines[i]
-		where := place(i, x.Name)
-		add(where, "sightline", x, x.by)
+		add("sightline", x, x.by)
 		for j := range x.Spectra {
-			add(nth(where+": spectrum", j), "sightline.spectrum", &x.Spectra[j], x.Spectra[j].by)
+			add("sightline.spectrum", &x.Spectra[j], x.Spectra[j].by)
 		}
 		for j := range x.Lines {
-			add(nth(where+": line", j), "sightline.line", &x.Lines[j], x.Lines[j].by)
+			add("sightline.line", &x.Lines[j], x.Lines[j].by)
 		}
 		for j := range x.Columns {
-			add(nth(where+": column", j), "sightline.column", &x.Columns[j], x.Columns[j].by)
+			add("sightline.column", &x.Columns[j], x.Columns[j].by)
 		}
 		for j := range x.Adopt {
-			add(nth(where+": adopt", j), "sightline.adopt", &x.Adopt[j], x.Adopt[j].by)
+			add("sightline.adopt", &x.Adopt[j], x.Adopt[j].by)
 		}
 	}
+	order := map[string]int{}
+	for i, k := range schema {
+		order[k.Table+"\x00"+k.Name] = i
+	}
+	sort.SliceStable(out, func(a, b int) bool {
+		return order[out[a].Table+"\x00"+out[a].Key] < order[out[b].Table+"\x00"+out[b].Key]
+	})
 	return out
 }
 

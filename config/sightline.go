@@ -57,15 +57,18 @@ func (l *loader) layer(s *Sightline, def common, where string, m map[string]any,
 			sp := Spectrum{by: origins{}}
 			l.defaults("sightline.spectrum", &sp, sp.by)
 			(&loader{}).fill("", "sightline.spectrum", def.spectrum, &sp, sp.by, "defaults")
-			l.required(place, "sightline.spectrum", t)
-			l.fill(place, "sightline.spectrum", t, &sp, sp.by, origin)
-			l.checkSpectrum(place, &sp)
+			if l.read(place, "sightline.spectrum", t, &sp, sp.by, origin) {
+				l.checkSpectrum(place, &sp)
+			}
 			s.Spectra = append(s.Spectra, sp)
 		}
 	}
 	for i, t := range l.tables(where, "line", m) {
 		place := nth(at(where, "line"), i)
-		l.required(place, "sightline.line", t)
+		if _, ok := t["name"].(string); !ok { // the others are read where their name is known
+			l.read(place, "sightline.line", t, &Line{}, nil, "")
+			continue
+		}
 		s.raw = append(s.raw, rawLine{place, t})
 	}
 	if _, ok := m["lines"]; ok {
@@ -73,26 +76,26 @@ func (l *loader) layer(s *Sightline, def common, where string, m map[string]any,
 	}
 	if t := l.table(where, "hydrogen", m); t != nil {
 		h := &Hydrogen{by: origins{}}
-		l.required(at(where, "hydrogen"), "sightline.hydrogen", t)
-		l.fill(at(where, "hydrogen"), "sightline.hydrogen", t, h, h.by, origin)
-		l.checkHydrogen(at(where, "hydrogen"), h)
+		if l.read(at(where, "hydrogen"), "sightline.hydrogen", t, h, h.by, origin) {
+			l.checkHydrogen(at(where, "hydrogen"), h)
+		}
 		s.Hydrogen = h
 	}
 	for i, t := range l.tables(where, "column", m) {
 		place := nth(at(where, "column"), i)
 		c := Column{by: origins{}}
 		l.defaults("sightline.column", &c, c.by)
-		l.required(place, "sightline.column", t)
-		l.fill(place, "sightline.column", t, &c, c.by, origin)
-		l.checkColumn(place, &c, s)
+		if l.read(place, "sightline.column", t, &c, c.by, origin) {
+			l.checkColumn(place, &c, s)
+		}
 		s.Columns = append(s.Columns, c)
 	}
 	for i, t := range l.tables(where, "adopt", m) {
 		place := nth(at(where, "adopt"), i)
 		a := Adopt{by: origins{}}
-		l.required(place, "sightline.adopt", t)
-		l.fill(place, "sightline.adopt", t, &a, a.by, origin)
-		l.checkAdopt(place, &a, s)
+		if l.read(place, "sightline.adopt", t, &a, a.by, origin) {
+			l.checkAdopt(place, &a, s)
+		}
 		s.Adopt = append(s.Adopt, a)
 	}
 }
@@ -103,7 +106,8 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 	type entry struct {
 		line  atomic.Line
 		where string
-		m     map[string]any // nil: only named
+		m     map[string]any // its own keys; nil: only named
+		own   bool           // named by the sightline itself
 	}
 	look := func(where, name string) (atomic.Line, bool) {
 		a, err := l.tab.Find(name)
@@ -119,15 +123,15 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 				if slices.ContainsFunc(shared, func(e entry) bool { return e.line.Name == a.Name }) {
 					l.bad(nth("defaults: line", i), "keep one of them", "%s is there twice", a.Name)
 				}
-				shared = append(shared, entry{a, nth("defaults: line", i), t})
+				shared = append(shared, entry{a, nth("defaults: line", i), t, false})
 			}
 		}
 	}
 	for _, r := range x.raw {
-		if name, ok := r.m["name"].(string); ok {
-			if a, ok := look(at(r.where, "name"), name); ok {
-				own = append(own, entry{a, r.where, r.m})
-			}
+		if a, ok := look(at(r.where, "name"), r.m["name"].(string)); ok {
+			own = append(own, entry{a, r.where, r.m, true})
+		} else {
+			l.fill(r.where, "sightline.line", r.m, &Line{}, nil, "")
 		}
 	}
 	at0 := x.linesAt
@@ -140,7 +144,7 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 				l.bad(nth(at0, i), "keep one of them", "%s is there twice", a.Name)
 				continue
 			}
-			list = append(list, entry{a, nth(at0, i), nil})
+			list = append(list, entry{a, nth(at0, i), nil, x.linesAt != ""})
 		}
 	}
 	// The order of the results: the list, then what only [[defaults.line]] and
@@ -177,8 +181,9 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 				}
 			}
 		}
-		if e.m != nil {
-			l.fill(e.where, "sightline.line", e.m, &ln, ln.by, "")
+		good := true
+		if e.own && e.m != nil {
+			good = l.read(e.where, "sightline.line", e.m, &ln, ln.by, "")
 			for k := range e.m {
 				set[k] = true
 			}
@@ -188,9 +193,10 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 			x.Skipped = append(x.Skipped, ln.Name)
 			continue
 		}
-		own := e.m != nil || at0 != "defaults: lines" && slices.ContainsFunc(list, func(o entry) bool { return o.line.Name == e.line.Name })
-		inherit(x, &ln, set, own, e.line.Molecule())
-		l.checkLine(e.where, x, &ln)
+		inherit(x, &ln, set, e.own, e.line.Molecule())
+		if good {
+			l.checkLine(e.where, x, &ln)
+		}
 		x.Lines = append(x.Lines, ln)
 	}
 	l.checkSightline(s, x, where, len(own) > 0 || x.linesAt != "")
