@@ -27,12 +27,16 @@ type Spectrum struct {
 	Layout   string // "ESO row vector", "linear image", …
 	Segments []Segment
 	Header   map[string]string // cards worth keeping, by keyword
+	Coord    *Coord            // direction of the star, nil unknown
 	Notes    []string          // warnings of the reader, for people
 }
 
+// Coord is a direction on the sky in degrees, ICRS (FK5 J2000 is taken for it).
+type Coord struct{ RA, Dec float64 }
+
 // A Segment is one order, stripe or detector of one exposure, wavelengths
 // ascending. After reading, Wave is in the file's medium and frame (converted to
-// Å); Convert puts it on vacuum and a chosen frame.
+// Å); ToVacuum and ToFrame convert it.
 type Segment struct {
 	Order           int       // order or aperture number; index+1 where the file has none
 	Label           string    // "order 87", "FUVA"
@@ -46,6 +50,7 @@ type Segment struct {
 	Shift           []frame.Applied
 	Unit            string  // of the flux, as the file says
 	Resolution      float64 // λ/FWHM from the header, 0 unknown
+	Coord           *Coord  // direction of the star, nil unknown
 	Normalised      bool    // the file says that its continuum is 1
 	Source          Source
 	Notes           []string

@@ -1,0 +1,295 @@
+package spectrum
+
+import (
+	"fmt"
+	"math"
+	"slices"
+	"strconv"
+	"strings"
+
+	"lacuna/spectrum/fits"
+)
+
+// partners are names of image extensions that belong to a flux image.
+var partners = map[string]string{"ERR": "error", "ERROR": "error", "SIGMA": "error", "ERRDATA": "error", "STAT": "variance", "VAR": "variance", "VARIANCE": "variance", "IVAR": "inverse variance",
+	"DQ": "mask", "QUAL": "mask", "QUALITY": "mask", "MASK": "mask", "FLAGS": "mask", "CONTINUUM": "continuum", "CONT": "continuum"}
+
+// images reads every image HDU with a spectral axis, each as its own segments;
+// extensions of errors and flags join the flux image of the same EXTVER. It
+// reports whether there was any.
+func (r *reader) images(hdus []*fits.HDU) (bool, error) {
+	done := false
+	for _, h := range hdus {
+		if h.Kind != fits.Image || h.Err != nil || partners[strings.ToUpper(h.Name())] != "" && r.o.HDU == "" {
+			continue
+		}
+		if !r.hasAxis(h) {
+			continue
+		}
+		done = true
+		if err := r.image(h, hdus); err != nil {
+			return true, err
+		}
+	}
+	return done, nil
+}
+
+// hasAxis reports whether a header describes a spectral axis, well or badly.
+func (r *reader) hasAxis(h *fits.HDU) bool {
+	if _, n := squeeze(h); n < 0 {
+		return false
+	}
+	c := cards{&h.Header}
+	return c.has("CRVAL1") && (c.has("CDELT1") || c.has("CD1_1")) || c.has("COEFF0") && c.has("COEFF1")
+}
+
+// squeeze returns the pixels of a line and the number of lines; −1 where the
+// first axis has one pixel or none.
+func squeeze(h *fits.HDU) (pixels, lines int64) {
+	if len(h.Axes) == 0 || h.Axes[0] < 2 {
+		return 0, -1
+	}
+	return h.Axes[0], h.Lines()
+}
+
+// A law turns the FITS pixel number p (from 1) into a wavelength in Å.
+type law struct {
+	at    func(p float64) float64
+	ctype string
+	kind  string
+	notes []string
+}
+
+// image reads one flux image and what belongs to it.
+func (r *reader) image(h *fits.HDU, hdus []*fits.HDU) error {
+	c := cards{&h.Header}
+	all := r.headers(h)
+	r.describe(all)
+	n, lines := squeeze(h)
+	w, err := r.axis(h, c, n)
+	if err != nil {
+		return err
+	}
+	r.s.Layout = w.kind + " image"
+	plan, err := r.lines(h, all, lines)
+	if err != nil {
+		return err
+	}
+	for _, l := range plan {
+		if r.o.Row > 0 && l.flux != int64(r.o.Row)-1 {
+			continue
+		}
+		label := l.label
+		if label == "" {
+			label = "image"
+			if h.Name() != "" {
+				label = h.Name()
+			}
+			if h.Index > 0 && (h.Name() == "" || r.sameNames(h, hdus)) {
+				label = fmt.Sprintf("%s (HDU %d)", label, h.Index)
+			}
+		}
+		s := Segment{Order: len(r.s.Segments) + 1, Label: label, Unit: all.str("BUNIT"), Source: Source{File: r.c.Name, HDU: h.Index, Row: int(l.flux) + 1}, Notes: slices.Clone(w.notes)}
+		if l.order != 0 {
+			s.Order = l.order
+		}
+		px := pixels{wave: make([]float64, n)}
+		for i := range px.wave {
+			px.wave[i] = w.at(float64(i + 1))
+		}
+		if px.flux, err = h.Line(l.flux); err != nil {
+			return err
+		}
+		if l.err >= 0 {
+			if px.err, err = h.Line(l.err); err != nil {
+				return err
+			}
+			px.err = picked{errKind: l.errKind}.sigma(px.err, px.flux)
+			s.note("line %d of the image is the error (%s)", l.err+1, l.by)
+		} else if err := r.partner(h, hdus, l.flux, &s, &px); err != nil {
+			return err
+		}
+		if i := slices.IndexFunc(px.wave, func(x float64) bool { return !finite(x) || x <= 0 }); i >= 0 {
+			return h.Fail(fmt.Sprintf("the spectral axis gives wavelength %g at pixel %d", px.wave[i], i+1), "correct CRVAL1 and CDELT1, or give layout and wave_unit")
+		}
+		r.decide(&s, all, clue{ctype: w.ctype}, min(px.wave[0], px.wave[n-1]))
+		if err := s.fill(px); err != nil {
+			return err
+		}
+		r.s.Segments = append(r.s.Segments, s)
+	}
+	if r.o.Row > 0 && int64(r.o.Row) > lines {
+		return h.Fail(fmt.Sprintf("there is no image line %d; it has %d", r.o.Row, lines), "choose another row")
+	}
+	return nil
+}
+
+func (r *reader) sameNames(h *fits.HDU, hdus []*fits.HDU) bool {
+	return slices.ContainsFunc(hdus, func(g *fits.HDU) bool { return g != h && g.Kind == fits.Image && g.Name() == h.Name() })
+}
+
+// partner attaches the error, mask and continuum extensions of equal EXTVER and size.
+func (r *reader) partner(h *fits.HDU, hdus []*fits.HDU, line int64, s *Segment, px *pixels) error {
+	for _, g := range hdus {
+		what := partners[strings.ToUpper(g.Name())]
+		if g == h || g.Kind != fits.Image || g.Err != nil || what == "" || !slices.Equal(g.Axes, h.Axes) || g.Str("EXTVER") != h.Str("EXTVER") {
+			continue
+		}
+		v, err := g.Line(line)
+		if err != nil {
+			return err
+		}
+		switch what {
+		case "mask":
+			px.bad = picked{goodIsZero: true}.flags(v)
+		case "continuum":
+			px.cont = v
+		default:
+			px.err = picked{errKind: what}.sigma(v, px.flux)
+		}
+		s.note("%s from %s", what, g.Where())
+	}
+	return nil
+}
+
+// aline is one segment's lines in an image.
+type aline struct {
+	flux, err   int64 // from 0; err −1 none
+	errKind, by string
+	label       string
+	order       int
+}
+
+// lines decides what the lines of an image are.
+func (r *reader) lines(h *fits.HDU, c cards, n int64) ([]aline, error) {
+	if r.o.FluxCol != "" || r.o.ErrCol != "" && n > 1 {
+		return r.userLines(h, n)
+	}
+	switch {
+	case n == 1:
+		return []aline{{flux: 0, err: -1}}, nil
+	case strings.Contains(r.wat(h, 0), "system=equispec"):
+		return r.apertures(h, c)
+	case n == 2:
+		l := aline{flux: 0, err: 1, by: "line 2 of two is taken for it"}
+		if kind, by := rowWords(h, 2); by != "" {
+			l.errKind, l.by = kind, by
+			return []aline{l}, nil
+		}
+		return []aline{l}, r.looksLikeError(h)
+	}
+	return nil, h.Fail(fmt.Sprintf("the image has %d lines and nothing says what they are", n), "say which: flux_col and err_col, line numbers from 1")
+}
+
+func (r *reader) userLines(h *fits.HDU, n int64) ([]aline, error) {
+	l := aline{flux: 0, err: -1, by: "user"}
+	for _, w := range []struct {
+		word string
+		into *int64
+	}{{r.o.FluxCol, &l.flux}, {r.o.ErrCol, &l.err}} {
+		if w.word == "" || strings.EqualFold(w.word, "none") {
+			continue
+		}
+		k, err := strconv.ParseInt(w.word, 10, 64)
+		if err != nil || k < 1 || k > n {
+			return nil, h.Fail(fmt.Sprintf("'%s' is no line of an image of %d lines", w.word, n), "give a number from 1")
+		}
+		*w.into = k - 1
+	}
+	return []aline{l}, nil
+}
+
+// rowWords looks for what cards and comments say of an image line: BANDIDn,
+// ARRAYn, ROWn, or "row 2 = 1-sigma error".
+func rowWords(h *fits.HDU, n int) (kind, by string) {
+	for _, c := range h.Cards {
+		text := strings.ToLower(c.Value)
+		if c.Key == "COMMENT" || c.Key == "HISTORY" {
+			text = strings.ToLower(c.Comment)
+			i := strings.Index(text, fmt.Sprintf("row %d", n))
+			if i < 0 {
+				continue
+			}
+			text = text[i:]
+		} else if c.Key != fmt.Sprintf("BANDID%d", n) && c.Key != fmt.Sprintf("ARRAY%d", n) && c.Key != fmt.Sprintf("ROW%d", n) {
+			continue
+		}
+		switch {
+		case strings.Contains(text, "inverse variance"), strings.Contains(text, "ivar"):
+			return "inverse variance", c.Key
+		case strings.Contains(text, "variance"):
+			return "variance", c.Key
+		case strings.Contains(text, "sigma"), strings.Contains(text, "error"), strings.Contains(text, "uncertainty"):
+			return "", c.Key
+		}
+	}
+	return "", ""
+}
+
+// looksLikeError refuses to take the second of two unnamed lines for an error
+// where it is about as large as the first.
+func (r *reader) looksLikeError(h *fits.HDU) error {
+	a, err := h.Line(0)
+	if err != nil {
+		return err
+	}
+	b, err := h.Line(1)
+	if err != nil {
+		return err
+	}
+	if ma, mb := median(a), median(b); ma > 0 && mb > 0.5*ma {
+		return h.Fail(fmt.Sprintf("the image has two lines of medians %.3g and %.3g: the second may be an error or another spectrum", ma, mb),
+			`say which: flux_col = "1" and err_col = "2" or "none"`)
+	}
+	return nil
+}
+
+func median(v []float64) float64 {
+	v = slices.DeleteFunc(slices.Clone(v), func(x float64) bool { return !finite(x) })
+	if len(v) == 0 {
+		return math.NaN()
+	}
+	slices.Sort(v)
+	return v[len(v)/2]
+}
+
+// apertures reads an IRAF equispec image: line n of axis 2 is aperture n (APNUMn
+// = "aperture beam low high"; beam 0 is not the object), axis 3 the bands of
+// BANDIDn, of which "sigma" is the error.
+func (r *reader) apertures(h *fits.HDU, c cards) ([]aline, error) {
+	if len(h.Axes) < 2 || len(h.Axes) > 3 {
+		return nil, h.Fail(fmt.Sprintf("an equispec image of %d axes", len(h.Axes)), "say which lines: flux_col, err_col")
+	}
+	aps, bands := h.Axes[1], int64(1)
+	if len(h.Axes) == 3 {
+		bands = h.Axes[2]
+	}
+	if aps > 10000 || bands > 100 {
+		return nil, h.Fail(fmt.Sprintf("%d apertures and %d bands", aps, bands), "cut out what you need")
+	}
+	sigma := int64(-1)
+	for b := int64(1); b <= bands; b++ {
+		if strings.HasPrefix(strings.ToLower(c.str(fmt.Sprintf("BANDID%d", b))), "sigma") {
+			sigma = b - 1
+		}
+	}
+	var out []aline
+	for a := int64(0); a < aps; a++ {
+		l := aline{flux: a, err: -1, order: int(a) + 1}
+		if words := strings.Fields(c.str(fmt.Sprintf("APNUM%d", a+1))); len(words) > 1 {
+			if k, err := strconv.Atoi(words[0]); err == nil {
+				l.order = k
+			}
+			if words[1] == "0" || sameText(c.str(fmt.Sprintf("APID%d", a+1)), "sky") {
+				r.s.Notes = append(r.s.Notes, fmt.Sprintf("aperture %d is sky (APNUM%d, APID%d) and was left out", l.order, a+1, a+1))
+				continue
+			}
+		}
+		l.label = fmt.Sprintf("aperture %d", l.order)
+		if sigma >= 0 {
+			l.err, l.by = sigma*aps+a, fmt.Sprintf("BANDID%d", sigma+1)
+		}
+		out = append(out, l)
+	}
+	return out, nil
+}

@@ -1,0 +1,250 @@
+package spectrum
+
+import (
+	"bytes"
+	"fmt"
+	"slices"
+	"strconv"
+	"strings"
+
+	"lacuna/internal/oops"
+	"lacuna/spectrum/fits"
+)
+
+// The layouts.
+const (
+	layoutImage  = "image"
+	layoutSDP    = "ESO science data product"
+	layoutVector = "row of array cells"
+	layoutX1D    = "HST x1d"
+	layoutLogLam = "loglam table"
+	layoutRows   = "one row a pixel"
+	layoutText   = "text"
+	layoutCSV    = "CSV"
+	layoutECSV   = "ECSV"
+)
+
+// A reader is one file on its way to a Spectrum.
+type reader struct {
+	o    Options
+	c    *fits.Content
+	file *fits.File
+	s    *Spectrum
+}
+
+// Read reads a spectrum. Its layout is recognised by content, never by the name:
+// FITS images with a linear or logarithmic axis, ESO science data products and
+// other tables with array cells, HST x1d, SDSS-like loglam tables, tables with
+// one row a pixel, ECSV, CSV and plain text; gzip of any of them.
+//
+// Wavelengths come out in Å, ascending, in the file's medium and frame, each with
+// a word on how that was decided; orders stay apart. Pixels are masked, never
+// dropped. Errors name the file and the place, and say how to mend it.
+func Read(path string, o Options) (*Spectrum, error) {
+	c, err := fits.Load(path)
+	if err != nil {
+		return nil, err
+	}
+	defer c.Close()
+	return read(c, o)
+}
+
+func read(c *fits.Content, o Options) (*Spectrum, error) {
+	r := &reader{o: o, c: c, s: &Spectrum{Header: map[string]string{}, Coord: o.Coord}}
+	if err := r.recognise(); err != nil {
+		return nil, err
+	}
+	if len(r.s.Segments) == 0 {
+		return nil, oops.Input(c.Name, "", "no segment of it holds a spectrum", "choose an HDU and its columns")
+	}
+	if !slices.ContainsFunc(r.s.Segments, func(s Segment) bool { return s.Good() > 0 }) {
+		return nil, oops.Input(c.Name, "", "no pixel is usable by its flux, error and quality", "look at the quality flags, or choose other columns")
+	}
+	sum, err := c.SHA256()
+	if err != nil {
+		return nil, err
+	}
+	for i := range r.s.Segments {
+		s := &r.s.Segments[i]
+		s.Source.SHA256 = sum
+		if err := s.Check(); err != nil {
+			return nil, fmt.Errorf("reading %s: %w", c.Name, err)
+		}
+	}
+	return r.s, nil
+}
+
+// recognise looks at the first bytes.
+func (r *reader) recognise() error {
+	head := make([]byte, 4096)
+	n, _ := r.c.ReadAt(head, 0)
+	head = head[:n]
+	text := bytes.TrimLeft(bytes.TrimPrefix(head, []byte("\xef\xbb\xbf")), " \t\r\n")
+	low := bytes.ToLower(text)
+	refuse := func(what, fix string) error { return oops.Input(r.c.Name, "", what, fix) }
+	switch {
+	case len(head) == 0:
+		return refuse("the file is empty", "fetch the file again")
+	case bytes.HasPrefix(head, []byte("SIMPLE  =")):
+		return r.fits()
+	case bytes.HasPrefix(head, []byte("BZh")):
+		return refuse("it is packed with bzip2", "unpack it with bunzip2")
+	case bytes.HasPrefix(head, []byte{0x1f, 0x9d}):
+		return refuse("it is packed with compress", "unpack it with uncompress")
+	case bytes.HasPrefix(head, []byte{0x1f, 0x8b}):
+		return refuse("it is packed with gzip twice", "unpack it once with gunzip")
+	case bytes.HasPrefix(head, []byte("PK\x03\x04")):
+		return refuse("it is a zip archive", "unpack it with unzip")
+	case bytes.HasPrefix(low, []byte("<!doctype")), bytes.HasPrefix(low, []byte("<html")):
+		what := "not a FITS file or a table: it is an HTML page"
+		if _, rest, ok := bytes.Cut(text, []byte("<title>")); ok {
+			title, _, _ := bytes.Cut(rest, []byte("<"))
+			if len(title) < 200 {
+				what += " (title: " + strings.TrimSpace(strings.ToValidUTF8(string(title), "?")) + ")"
+			}
+		}
+		return refuse(what, "the download failed; fetch the file again")
+	case bytes.HasPrefix(low, []byte("<votable")), bytes.HasPrefix(low, []byte("<?xml")):
+		return refuse("VOTable is not read yet", "save it as FITS, ECSV or CSV with any table program")
+	case bytes.HasPrefix(head, []byte{0xff, 0xfe}), bytes.HasPrefix(head, []byte{0xfe, 0xff}):
+		return refuse("the text is UTF-16", "save it as UTF-8")
+	case bytes.IndexByte(head, 0) >= 0:
+		return refuse("it holds NUL bytes and no layout that is known", "give FITS or text")
+	case bytes.HasPrefix(text, []byte("# %ECSV ")):
+		return r.ecsv()
+	}
+	return r.text()
+}
+
+// fits chooses the layout of a FITS file by the first rule that fits.
+func (r *reader) fits() error {
+	f, err := fits.New(r.c)
+	if err != nil {
+		return err
+	}
+	r.file = f
+	r.s.Notes = append(r.s.Notes, f.Notes...)
+	hdus := f.HDUs
+	if r.o.HDU != "" {
+		h, err := r.chosen()
+		if err != nil {
+			return err
+		}
+		hdus = []*fits.HDU{h}
+	}
+	for _, rule := range []func(h *fits.HDU) (layout string, read func() error){r.unread, r.tables} {
+		for _, h := range hdus {
+			if h.Err != nil {
+				continue
+			}
+			if layout, read := rule(h); read != nil {
+				r.s.Layout = layout
+				return read()
+			}
+		}
+	}
+	if done, err := r.images(hdus); done || err != nil {
+		return err
+	}
+	return r.nothing(hdus)
+}
+
+// chosen returns the HDU that the user named.
+func (r *reader) chosen() (*fits.HDU, error) {
+	var names []string
+	for _, h := range r.file.HDUs {
+		if strconv.Itoa(h.Index) == r.o.HDU || h.Name() != "" && strings.EqualFold(h.Name(), r.o.HDU) {
+			return h, h.Err
+		}
+		names = append(names, h.Describe())
+	}
+	return nil, oops.Input(r.c.Name, "", "there is no HDU "+r.o.HDU, "choose one of: "+strings.Join(names, "; "))
+}
+
+// nothing is the error where no rule fits.
+func (r *reader) nothing(hdus []*fits.HDU) error {
+	var list []string
+	for _, h := range hdus {
+		if h.Err != nil {
+			return h.Err
+		}
+	}
+	for _, h := range hdus {
+		if (h.Kind == fits.Binary || h.Kind == fits.Ascii) && h.Rows == 0 {
+			return h.Fail("table has no rows (NAXIS2=0)", "fetch the file again")
+		}
+		if len(list) < 20 {
+			list = append(list, h.Describe())
+		}
+	}
+	return oops.Input(r.c.Name, "", "no spectrum is recognised in it: "+strings.Join(list, "; "),
+		"name HDU and columns: hdu, wave_col, flux_col")
+}
+
+// headers are those that belong to an HDU.
+func (r *reader) headers(h *fits.HDU) cards {
+	if h.Index == 0 {
+		return cards{&h.Header}
+	}
+	return cards{&h.Header, &r.file.HDUs[0].Header}
+}
+
+// unread recognises layouts that are known but not read, so that they are not
+// taken for something else.
+func (r *reader) unread(h *fits.HDU) (string, func() error) {
+	c := cards{&h.Header}
+	not := func(what, fix string) (string, func() error) {
+		return what, func() error { return h.Fail(what+" is not read yet", fix) }
+	}
+	switch {
+	case h.Bool("ZIMAGE"):
+		return not("a tile-compressed image", "unpack it with funpack")
+	case sameText(h.Name(), "MEHI") || h.Col("STARTPIX") >= 0 && h.Col("DELTAW") >= 0:
+		return not("the IUE high-dispersion layout (MXHI)", "save wavelength, flux and quality of its orders as text")
+	case sameText(h.Name(), "MELO"):
+		return not("the IUE low-dispersion layout (MXLO)", "save wavelength, flux and sigma as text")
+	case strings.Contains(r.wat(h, 0), "system=multispec") || sameText(c.str("CTYPE1"), "MULTISPE"):
+		what := "the IRAF multispec layout"
+		if gap := watGap(&h.Header); gap != "" {
+			return what, func() error { return h.Fail(gap+": the wavelength solution cannot be read", "fetch the file again") }
+		}
+		return not(what, "export its orders as text or as linear images")
+	case c.match(func(k string) bool { return strings.HasSuffix(k, " DRS CAL TH COEFF LL0") }) != "" && len(h.Axes) == 2 && h.Axes[1] > 1:
+		return not("the e2ds layout of the DRS family", "use the s1d file, or save the orders as text")
+	case c.has("WV_0_01"):
+		return not("the KOA polynomial image", "use the extracted table")
+	}
+	return "", nil
+}
+
+// wat joins the cards WATn_001 … of an IRAF header: pieces of 68 characters,
+// whose trailing blanks FITS drops.
+func (r *reader) wat(h *fits.HDU, axis int) string {
+	var b strings.Builder
+	for i := 1; ; i++ {
+		c, ok := h.Lookup(fmt.Sprintf("WAT%d_%03d", axis, i))
+		if !ok {
+			return strings.TrimSpace(b.String())
+		}
+		fmt.Fprintf(&b, "%-68s", c.Value)
+	}
+}
+
+// watGap names the first card that is missing from a numbered run.
+func watGap(h *fits.Header) string {
+	last := 0
+	for _, c := range h.Cards {
+		if n, err := strconv.Atoi(strings.TrimPrefix(c.Key, "WAT2_")); err == nil && strings.HasPrefix(c.Key, "WAT2_") {
+			last = max(last, min(n, 999))
+		}
+	}
+	for i := 1; i < last; i++ {
+		if key := fmt.Sprintf("WAT2_%03d", i); !h.Has(key) {
+			if i == 1 {
+				return key + " is missing"
+			}
+			return fmt.Sprintf("%s is missing between WAT2_%03d and WAT2_%03d", key, i-1, i+1)
+		}
+	}
+	return ""
+}
