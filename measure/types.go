@@ -12,6 +12,9 @@ import (
 // A Piece is one line's neighbourhood in one segment: wavelengths in vacuum Å,
 // ascending, in the velocity frame of the results.
 type Piece struct {
+	File            string // of the spectrum, and its order: name what lines share
+	Order           int
+	ContinuumKey    string // names the continuum among all of the sightline; "": made from file, order and its range
 	Line            atomic.Line
 	Wave, Flux, Err []float64 // Err as tabulated; the errors used are Continuum.Sigma
 	Mask            []spectrum.Reason
@@ -37,12 +40,13 @@ type Zero struct {
 // A Feature is something else that absorbs: another transition, a diffuse band,
 // a telluric or a stellar line.
 type Feature struct {
-	Kind  string // transition, band, telluric, stellar
-	Name  string
-	Wave  float64    // vacuum Å in the frame of the piece (telluric lines already moved)
-	Range [2]float64 // km/s of gas (or half-widths) about Wave in which it may absorb
-	W     float64    // expected equivalent width, Å; 0 unknown
-	Note  string
+	Kind       string // transition, band, telluric, stellar
+	Name       string
+	Wave       float64    // vacuum Å in the frame of the piece (telluric lines already moved)
+	Range      [2]float64 // km/s of gas (or half-widths) about Wave in which it may absorb
+	W          float64    // expected equivalent width, Å; 0 unknown
+	Negligible bool       `json:",omitempty"` // listed, but too weak or too wide to matter
+	Note       string
 }
 
 // A Width is what one line in one segment gives.
@@ -90,7 +94,24 @@ type Width struct {
 	Flag      budget.Flag   `json:"flag"`
 	Notes     []string      `json:"notes,omitempty"`
 
+	Spread     float64     `json:"spread"`               // Å, half-spread of W over the continuum placements
+	SpreadErr  float64     `json:"spread_err"`           // Å, 1σ of that half-spread by pixel noise alone
+	Placements []Placement `json:"placements,omitempty"` // W with each of them
+	B          float64     `json:"b"`                    // km/s, assumed where the data do not tell
+	Gamma      float64     `json:"gamma,omitempty"`      // s⁻¹, of the line
+	Split      float64     `json:"split,omitempty"`      // km/s, rms of its hyperfine and isotope structure
+	Tau0       float64     `json:"tau0"`                 // central optical depth that the weak-line column was judged by
+	Correction float64     `json:"correction"`           // dex, applied to the weak-line column
+	Floored    int         `json:"floored,omitempty"`    // points of the apparent optical depth below 2σ of zero flux
+	Bin        int         `json:"bin"`                  // pixels averaged before the logarithm of the apparent optical depth
+
 	Profile Profile `json:"profile"` // for figures
+}
+
+// A Placement is the width with another continuum.
+type Placement struct {
+	What string  `json:"what"`
+	W    float64 `json:"w"` // Å
 }
 
 // A Profile is what a figure of the line needs; velocities in km/s.
@@ -109,4 +130,5 @@ type Doublet struct {
 	Delta        budget.Number `json:"delta"`     // log N_a(weak) − log N_a(strong)
 	Corrected    budget.Number `json:"corrected"` // log N; NaN when refused
 	Refused      string        `json:"refused,omitempty"`
+	Saturated    bool          `json:"saturated"` // δ > 0.05 + 2σ: the instrument hides saturation
 }
