@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"image/color"
 	"math"
 	"sort"
 	"strings"
@@ -34,9 +35,12 @@ func DepletionFigure(r survey.Record) (Figure, bool) {
 	}
 	sort.SliceStable(ds, func(i, j int) bool { return atomicNumber(ds[i].Element) < atomicNumber(ds[j].Element) })
 	title := plain(r.Name)
-	scale := "solar scale " + plain(ds[0].Scale)
+	scale := ""
+	if ds[0].Scale != "" {
+		scale = "solar scale " + plain(ds[0].Scale)
+	}
 	f := Figure{Name: figureName(r.Name, "depletion"), Title: title + ": depletions", Width: oneColumn, Height: vg.Points(170),
-		Caption: fmt.Sprintf("Depletions towards %s by atomic number, %s. Thick bars: 1σ without the error of the solar scale, thin bars: with it; arrows: limits; square brackets: intervals.", title, scale)}
+		Caption: fmt.Sprintf("Depletions towards %s by atomic number (%s). Thick bars: 1σ without the error of the solar scale, thin bars: with it; arrows: limits; open circles: marginal; bars without a point: intervals.", title, scale)}
 	if len(ds) > 16 {
 		f.Width = twoColumn
 	}
@@ -118,11 +122,17 @@ func drawDepletions(c draw.Canvas, area vg.Rectangle, ds []abundance.Depletion) 
 			}
 			up, down := n.ErrUp(), n.ErrLo()
 			p.curve(stroke(ink, fine), []float64{at, at}, []float64{clampLow(n.X-down, y), n.X + up})
-			p.curve(stroke(ink, 2), []float64{at, at}, []float64{clampLow(n.X-part*down, y), n.X + part*up})
-			if n.Kind() == "marginal" {
-				dot.Shape = draw.RingGlyph{}
+			for _, end := range []float64{n.X - down, n.X + up} {
+				if finite(end) {
+					e := p.at(at, end)
+					p.StrokeLine2(stroke(ink, fine), e.X-2, e.Y, e.X+2, e.Y)
+				}
 			}
+			p.curve(stroke(ink, 2), []float64{at, at}, []float64{clampLow(n.X-part*down, y), n.X + part*up})
 			p.DrawGlyph(dot, p.at(at, n.X))
+			if n.Kind() == "marginal" { // an open circle
+				p.DrawGlyph(draw.GlyphStyle{Color: color.White, Radius: vg.Points(1.3), Shape: draw.CircleGlyph{}}, p.at(at, n.X))
+			}
 		}
 	}
 	p.frame(true, true)

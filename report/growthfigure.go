@@ -267,7 +267,7 @@ func drawResiduals(c draw.Canvas, area vg.Rectangle, x axis, ps []growthPoint) {
 		}
 	}
 	top = math.Ceil(top) + 0.3
-	p.Y = axis{Lo: -top, Hi: top, Ticks: ticks(-top, top, 3, 0.08)}
+	p.Y = axis{Lo: -top, Hi: top, Ticks: ticks(-top, top, 4, 0.05)}
 	p.horizontal(stroke(midGrey, hair, 1, 1.5), 1)
 	p.horizontal(stroke(midGrey, hair, 1, 1.5), -1)
 	p.horizontal(stroke(midGrey, fine), 0)

@@ -150,10 +150,23 @@ func (s *stack) top() float64 {
 	return 4 + titleSize + 5 + keyRow*float64(len(s.key)) + 3
 }
 
-func (s *stack) flux() float64 { return fluxHeight + rowHeight*float64(s.nameRows) }
+func (s *stack) flux() float64 { return fluxHeight*s.tall() + rowHeight*float64(s.nameRows) }
+
+func (s *stack) na() float64 { return naHeight * (1 + (s.tall()-1)/2) }
+
+// tall stretches the panels of a figure with few of them.
+func (s *stack) tall() float64 {
+	switch s.rows {
+	case 1:
+		return 1.8
+	case 2:
+		return 1.3
+	}
+	return 1
+}
 
 func (s *stack) blockHeight() float64 {
-	return headRow*float64(s.headRows) + s.flux() + naHeight + blockGap
+	return headRow*float64(s.headRows) + s.flux() + s.na() + blockGap
 }
 
 func (s *stack) size() (w, h vg.Length) {
@@ -216,7 +229,7 @@ func (s *stack) drawBlock(c draw.Canvas, b block, pt vg.Point, lowest bool) {
 
 	top := pt.Y - vg.Points(headRow*float64(s.headRows))
 	split := top - vg.Points(s.flux())
-	bottom := split - vg.Points(naHeight)
+	bottom := split - vg.Points(s.na())
 	area := vg.Rectangle{Min: vg.Point{X: pt.X, Y: split}, Max: vg.Point{X: pt.X + s.wide, Y: top}}
 	s.drawFlux(newPanel(c, area, s.x, axis{}), b)
 	area = vg.Rectangle{Min: vg.Point{X: pt.X, Y: bottom}, Max: vg.Point{X: pt.X + s.wide, Y: split}}
@@ -262,6 +275,7 @@ func (s *stack) drawFlux(p panel, b block) {
 		p.Y.Ticks = ticks(lo, hi, n, 0.05)
 	}
 	if b.missing {
+		p.Y.Ticks = nil
 		p.frame(false, false)
 		p.FillText(letters(textSize, ink, text.XCenter, text.YCenter), p.Center(), "no usable pixels")
 		return
@@ -278,8 +292,10 @@ func (s *stack) drawFlux(p panel, b block) {
 		p.horizontal(stroke(green, fine, 5, 1.5, 1, 1.5), z.Level)
 	}
 	p.horizontal(stroke(vermilion, fine, 3, 1.5), 1)
-	for _, edge := range w.Window {
-		p.vertical(stroke(blue, hair, 2, 1.2), edge)
+	if w.Window[1] > w.Window[0] {
+		for _, edge := range w.Window {
+			p.vertical(stroke(blue, hair, 2, 1.2), edge)
+		}
 	}
 	x, y := outline(pr.V, pr.Flux, func(i int) bool { return value(pr.Bad, i) && i < len(pr.Flux) })
 	p.curve(stroke(midGrey, fine), x, y)
@@ -328,12 +344,9 @@ func (s *stack) drawNa(p panel, b block, lowest bool) {
 	if top > 0 {
 		low = math.Max(low, -top)
 		p.Y = axis{Lo: math.Min(1.15*low, -0.08*top), Hi: 1.18 * top, Ticks: []tick{{0, "0"}}}
-		step, mantissa, exp := niceStep(top / 2)
-		if 2*step < p.Y.Hi*0.85 {
-			step, mantissa = 2*step, 2*mantissa
-			if mantissa == 10 {
-				mantissa, exp = 1, exp+1
-			}
+		step, mantissa, exp := niceBelow(0.82 * p.Y.Hi)
+		if float64(p.py(step)-p.py(0)) < textSize+1 { // no room for two labels
+			p.Y.Ticks = nil
 		}
 		p.Y.Ticks = append(p.Y.Ticks, tick{step, fmt.Sprintf("%d·10^{%d}", mantissa, exp)})
 	}

@@ -109,9 +109,19 @@ func (p panel) vertical(s draw.LineStyle, x float64) {
 // frame draws all four sides with ticks inward, and the labels below and left.
 // Labels of x are left out of all but the lowest of stacked panels.
 func (p panel) frame(labelX, labelY bool) {
-	s := stroke(ink, fine)
-	box := corners(p.Rectangle)
-	p.StrokeLines(s, append(box, box[0], box[1]))
+	path := make(vg.Path, 0, 8+4*(len(p.X.Ticks)+len(p.Y.Ticks)))
+	for i, c := range corners(p.Rectangle) {
+		if i == 0 {
+			path.Move(c)
+		} else {
+			path.Line(c)
+		}
+	}
+	path.Close()
+	mark := func(x, y, dx, dy vg.Length) {
+		path.Move(vg.Point{X: x, Y: y})
+		path.Line(vg.Point{X: x + dx, Y: y + dy})
+	}
 	long := func(t tick) vg.Length {
 		if t.Label == "" {
 			return vg.Points(1.5)
@@ -120,18 +130,24 @@ func (p panel) frame(labelX, labelY bool) {
 	}
 	for _, t := range p.X.Ticks {
 		x := p.px(t.At)
-		p.StrokeLine2(s, x, p.Min.Y, x, p.Min.Y+long(t))
-		p.StrokeLine2(s, x, p.Max.Y, x, p.Max.Y-long(t))
-		if labelX && t.Label != "" {
-			p.FillText(letters(textSize, ink, text.XCenter, text.YTop), vg.Point{X: x, Y: p.Min.Y - vg.Points(2)}, t.Label)
-		}
+		mark(x, p.Min.Y, 0, long(t))
+		mark(x, p.Max.Y, 0, -long(t))
 	}
 	for _, t := range p.Y.Ticks {
 		y := p.py(t.At)
-		p.StrokeLine2(s, p.Min.X, y, p.Min.X+long(t), y)
-		p.StrokeLine2(s, p.Max.X, y, p.Max.X-long(t), y)
+		mark(p.Min.X, y, long(t), 0)
+		mark(p.Max.X, y, -long(t), 0)
+	}
+	p.SetLineStyle(stroke(ink, fine))
+	p.Stroke(path)
+	for _, t := range p.X.Ticks {
+		if labelX && t.Label != "" {
+			p.FillText(letters(textSize, ink, text.XCenter, text.YTop), vg.Point{X: p.px(t.At), Y: p.Min.Y - vg.Points(2)}, t.Label)
+		}
+	}
+	for _, t := range p.Y.Ticks {
 		if labelY && t.Label != "" {
-			p.FillText(letters(textSize, ink, text.XRight, text.YCenter), vg.Point{X: p.Min.X - vg.Points(2.5), Y: y}, t.Label)
+			p.FillText(letters(textSize, ink, text.XRight, text.YCenter), vg.Point{X: p.Min.X - vg.Points(2.5), Y: p.py(t.At)}, t.Label)
 		}
 	}
 }
@@ -182,6 +198,19 @@ func niceStep(s float64) (step float64, mantissa, exp int) {
 			}
 		}
 		exp++
+	}
+}
+
+// niceBelow returns the largest of 1, 2, 5 times 10ᵉˣᵖ that is not above s.
+func niceBelow(s float64) (x float64, mantissa, exp int) {
+	exp = int(math.Floor(math.Log10(s))) + 1
+	for {
+		for _, m := range []int{5, 2, 1} {
+			if x = float64(m) * math.Pow(10, float64(exp)); x <= s*(1+1e-9) {
+				return x, m, exp
+			}
+		}
+		exp--
 	}
 }
 
