@@ -9,6 +9,7 @@ import (
 	"sort"
 	"strconv"
 	"strings"
+	"sync"
 	"unicode"
 	"unicode/utf8"
 
@@ -24,6 +25,7 @@ const maxMistakes = 20
 type loader struct {
 	file string
 	tab  *atomic.Table // of transitions; nil when it could not be had
+	look map[string]found
 	errs []error
 	said map[string]bool // a mistake in [defaults] shows once, not once a sightline
 }
@@ -59,22 +61,15 @@ func (l *loader) err() error {
 // where each came from. Keys of Type Table or Tables without a field of their
 // name are the caller's. where is the place of m in the file, for messages.
 func (l *loader) fill(where, table string, m map[string]any, dst any, by origins, origin string) {
-	keys := keysOf(table)
-	names := make([]string, len(keys))
-	for i, k := range keys {
-		names[i] = k.Name
-	}
-	for _, name := range sortedKeys(m) {
-		if !slices.Contains(names, name) {
-			l.bad(at(where, name), unknownFix(table, name, names), "unknown key")
-		}
-	}
+	sec := sections()[table]
 	v := reflect.ValueOf(dst).Elem()
-	for _, k := range keys {
-		x, ok := m[k.Name]
-		if !ok {
+	for _, name := range sortedKeys(m) {
+		i := slices.Index(sec.names, name)
+		if i < 0 {
+			l.bad(at(where, name), unknownFix(table, name, sec.names), "unknown key")
 			continue
 		}
+		k, x := sec.keys[i], m[name]
 		if f, ok := fieldOf(v, k.Name); ok && l.set(at(where, k.Name), k, x, f) && by != nil {
 			by[k.Name] = origin
 		}
@@ -456,15 +451,25 @@ func sortedKeys(m map[string]any) []string {
 	return out
 }
 
+var fields sync.Map // of reflect.Type: key → index of the field
+
 // fieldOf finds the field of a key.
 func fieldOf(v reflect.Value, key string) (reflect.Value, bool) {
-	t := v.Type()
-	for i := range t.NumField() {
-		if t.Field(i).Tag.Get("toml") == key {
-			return v.Field(i), true
+	known, ok := fields.Load(v.Type())
+	if !ok {
+		m := map[string]int{}
+		for i := range v.NumField() {
+			if tag := v.Type().Field(i).Tag.Get("toml"); tag != "" {
+				m[tag] = i
+			}
 		}
+		known, _ = fields.LoadOrStore(v.Type(), m)
 	}
-	return reflect.Value{}, false
+	i, ok := known.(map[string]int)[key]
+	if !ok {
+		return reflect.Value{}, false
+	}
+	return v.Field(i), true
 }
 
 var frameByWord = []struct {

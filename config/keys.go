@@ -5,6 +5,7 @@ import (
 	"math"
 	"strconv"
 	"strings"
+	"sync"
 )
 
 // A Type is what a key takes.
@@ -49,17 +50,26 @@ func Keys() []KeyDoc {
 	return out
 }
 
-// keysOf returns the keys of one table. [defaults] takes the sightline's keys
-// that can be common to several.
-func keysOf(table string) []KeyDoc {
-	var out []KeyDoc
+// A keySection is the keys of one table, ready for use.
+type keySection struct {
+	keys  []KeyDoc
+	names []string
+}
+
+var sections = sync.OnceValue(func() map[string]*keySection {
+	out := map[string]*keySection{}
 	for _, k := range schema {
-		if k.Table == table {
-			out = append(out, k)
+		if out[k.Table] == nil {
+			out[k.Table] = &keySection{}
 		}
+		out[k.Table].keys = append(out[k.Table].keys, k)
+		out[k.Table].names = append(out[k.Table].names, k.Name)
 	}
 	return out
-}
+})
+
+// keysOf returns the keys of one table, for reading only.
+func keysOf(table string) []KeyDoc { return sections()[table].keys }
 
 // An interval is a parsed Range.
 type interval struct {

@@ -32,6 +32,27 @@ func (l *loader) lineTable(where, dir string, fSet *string, own string) *atomic.
 	return t
 }
 
+type found struct {
+	line atomic.Line
+	err  error
+}
+
+// find looks a transition up, once for each name.
+func (l *loader) find(where, name string) (atomic.Line, bool) {
+	f, ok := l.look[name]
+	if !ok {
+		if l.look == nil {
+			l.look = map[string]found{}
+		}
+		f.line, f.err = l.tab.Find(name)
+		l.look[name] = f
+	}
+	if f.err != nil {
+		l.wrap(where, f.err)
+	}
+	return f.line, f.err == nil
+}
+
 func (l *loader) checkScale(scale string) {
 	if scale == "" {
 		return

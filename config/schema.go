@@ -19,16 +19,16 @@ var schema = []KeyDoc{
 	{Table: "survey", Name: "catalogue", Type: Text, Meaning: "CSV or ECSV table that makes one sightline a row (see Catalogue below)."},
 	{Table: "survey", Name: "catalogue_ignore", Type: Texts, Meaning: "Catalogue columns that are not for this program; [\"*\"] for all that it does not know."},
 	{Table: "survey", Name: "air_formula", Type: Text, Default: `"ciddor1996"`, Words: formulaWords, Meaning: "Refractive index of air by which air wavelengths become vacuum wavelengths."},
-	{Table: "survey", Name: "seed", Type: Integer, Default: `1`, Range: "[0, 9007199254740991]", Meaning: "Seed of every random number; each sightline derives its own from it and its name."},
+	{Table: "survey", Name: "seed", Type: Integer, Default: `1`, Range: "[0, 9007199254740991]", Meaning: "Seed of every random number; the same seed gives the same results."},
 
 	{Table: "sightline", Name: "name", Type: Text, Required: true, Meaning: "Name of the star. Unique, also without regard to capitals."},
 	{Table: "sightline", Name: "override", Type: Switch, Default: `false`, Meaning: "true: this sightline is a row of the catalogue, and the keys given here take the place of the row's."},
-	{Table: "sightline", Name: "note", Type: Text, Meaning: "Free text, kept in the results."},
-	{Table: "sightline", Name: "spectral_type", Type: Text, Meaning: "MK type of the star, for the observing log."},
-	{Table: "sightline", Name: "V_mag", Type: Number, Unit: "mag", Range: "[-30, 50]", Meaning: "V magnitude, for the observing log."},
-	{Table: "sightline", Name: "ra", Type: Number, Unit: "°", Range: "[0, 360)", Meaning: "Right ascension (ICRS), where the spectra do not say: for the LSRK and the observing log."},
+	{Table: "sightline", Name: "note", Type: Text, Meaning: "Free text, kept with the configuration in the manifest."},
+	{Table: "sightline", Name: "spectral_type", Type: Text, Meaning: "MK type of the star, kept with the configuration."},
+	{Table: "sightline", Name: "V_mag", Type: Number, Unit: "mag", Range: "[-30, 50]", Meaning: "V magnitude, kept with the configuration."},
+	{Table: "sightline", Name: "ra", Type: Number, Unit: "°", Range: "[0, 360)", Meaning: "Right ascension (ICRS), where the spectra do not say: the LSRK needs it."},
 	{Table: "sightline", Name: "dec", Type: Number, Unit: "°", Range: "[-90, 90]", Meaning: "Declination (ICRS)."},
-	{Table: "sightline", Name: "E_BV", Type: Table, Meaning: "Reddening E(B−V) with its error and source, for the observing log."},
+	{Table: "sightline", Name: "E_BV", Type: Table, Meaning: "Reddening E(B−V) with its error and source, kept with the configuration."},
 	{Table: "sightline", Name: "velocity", Type: Pair, Unit: "km/s", Range: "[-30000, 30000]", Common: true, Meaning: "Where gas is expected, in the frame of the results: the window of every line that has none of its own, and the range over which other lines count as blends."},
 	{Table: "sightline", Name: "lines", Type: Texts, Common: true, Meaning: "Transitions to measure, by name, with the settings of the sightline."},
 	{Table: "sightline", Name: "auto_window", Type: Switch, Default: `false`, Common: true, Meaning: "true: windows are ranges to search; the one used is found from the line's edges."},
@@ -63,7 +63,7 @@ var schema = []KeyDoc{
 	{Table: "sightline.spectrum", Name: "columns", Type: Table, Meaning: "Names (or numbers, from 1) of the columns to read, where the file does not make them clear."},
 	{Table: "sightline.spectrum", Name: "unit", Type: Text, Words: []string{"Angstrom", "nm", "um", "m", "1/cm", "log10(Angstrom)"}, Meaning: "Unit of the wavelengths, where the file does not say."},
 	{Table: "sightline.spectrum", Name: "mask", Type: Pairs, Unit: "Å", Range: "(0, 1e8)", Meaning: "Wavelengths not to use: Å in the file's own medium and frame, as a plot of the file shows them."},
-	{Table: "sightline.spectrum", Name: "note", Type: Text, Meaning: "Free text, kept in the results."},
+	{Table: "sightline.spectrum", Name: "note", Type: Text, Meaning: "Free text, kept with the configuration in the manifest."},
 
 	{Table: "sightline.line", Name: "name", Type: Text, Required: true, Meaning: "The transition: \"Na I 5889.95\", \"Ca II K\", \"CN R(0)\"."},
 	{Table: "sightline.line", Name: "use", Type: Switch, Default: `true`, Meaning: "false: leave it out, although [defaults] or lines name it."},
@@ -76,7 +76,7 @@ var schema = []KeyDoc{
 	{Table: "sightline.line", Name: "file", Type: Text, Meaning: "The one spectrum to measure it in, as written in its file key."},
 	{Table: "sightline.line", Name: "b", Type: Number, Unit: "km/s", Range: "(0, 1000]", Meaning: "Doppler parameter assumed for a limit; b_atom or b_molecule where not given."},
 	{Table: "sightline.line", Name: "limit_width", Type: Number, Unit: "km/s", Range: "[0, 10000]", Meaning: "As in the sightline, for this line."},
-	{Table: "sightline.line", Name: "note", Type: Text, Meaning: "Free text, kept in the results."},
+	{Table: "sightline.line", Name: "note", Type: Text, Meaning: "Free text, kept with the configuration in the manifest."},
 
 	{Table: "sightline.hydrogen", Name: "logN_HI", Type: Number, Unit: "log cm⁻²", Range: "[10, 25]", Meaning: "N(H I)."},
 	{Table: "sightline.hydrogen", Name: "logN_HI_err", Type: Number, Unit: "dex", Range: "(0, 5]", Meaning: "Its 1σ error. Required with it."},
@@ -122,7 +122,7 @@ var schema = []KeyDoc{
 	{Table: "growth", Name: "limit_sigma", Type: Number, Unit: "σ", Default: `3.0`, Range: "[1, 10]", Meaning: "Level of limits that do not say their own."},
 
 	{Table: "growth.sightline", Name: "name", Type: Text, Required: true, Meaning: "Name of the star. Unique; a name that the table has too adds to it."},
-	{Table: "growth.sightline", Name: "note", Type: Text, Meaning: "Free text, kept in the results."},
+	{Table: "growth.sightline", Name: "note", Type: Text, Meaning: "Free text, kept with the configuration in the manifest."},
 	{Table: "growth.sightline", Name: "b_range", Type: Pair, Unit: "km/s", Range: "(0, 1000]", Meaning: "In place of the batch's."},
 	{Table: "growth.sightline", Name: "width", Type: Tables, Meaning: "The measured widths."},
 	{Table: "growth.sightline", Name: "share_b", Type: Tables, Meaning: "Species or levels that share one Doppler parameter."},
@@ -132,7 +132,7 @@ var schema = []KeyDoc{
 	{Table: "growth.sightline.width", Name: "err_mA", Type: Number, Unit: "mÅ", Range: "(0, 1e6]", Meaning: "1σ error. Required with W_mA."},
 	{Table: "growth.sightline.width", Name: "limit_mA", Type: Number, Unit: "mÅ", Range: "(0, 1e6]", Meaning: "Somebody else's upper limit, in place of W_mA and err_mA."},
 	{Table: "growth.sightline.width", Name: "sigma", Type: Number, Unit: "σ", Range: "[1, 10]", Meaning: "Level of the limit; limit_sigma where not given."},
-	{Table: "growth.sightline.width", Name: "note", Type: Text, Meaning: "Free text, kept in the results."},
+	{Table: "growth.sightline.width", Name: "note", Type: Text, Meaning: "Free text, kept with the configuration in the manifest."},
 
 	{Table: "growth.sightline.share_b", Name: "species", Type: Texts, Required: true, Meaning: "Two or more: \"CN N=0\", \"CN N=1\"."},
 }

@@ -2,17 +2,30 @@ package config
 
 import (
 	"errors"
+	"maps"
 	"slices"
 
 	"lacuna/atomic"
 	"lacuna/internal/oops"
 )
 
-// common is [defaults]: what all sightlines share.
+// common is what all sightlines share: the built-in defaults and [defaults].
 type common struct {
-	own      map[string]any
-	spectrum map[string]any
-	lines    []map[string]any
+	sightline Sightline
+	spectrum  Spectrum
+	lines     []map[string]any
+}
+
+func (c common) newSightline() Sightline {
+	x := c.sightline
+	x.by = maps.Clone(x.by)
+	return x
+}
+
+func (c common) newSpectrum() Spectrum {
+	x := c.spectrum
+	x.by = maps.Clone(x.by)
+	return x
 }
 
 // common checks [defaults] once, so that its mistakes show under its own name.
@@ -24,14 +37,17 @@ func (l *loader) common(m map[string]any) common {
 			}
 		}
 	}
-	c := common{own: m, spectrum: l.table("defaults", "spectrum", m), lines: l.tables("defaults", "line", m)}
-	l.fill("defaults", "sightline", m, &Sightline{}, nil, "")
+	c := common{sightline: Sightline{by: origins{}}, spectrum: Spectrum{by: origins{}}, lines: l.tables("defaults", "line", m)}
+	l.defaults("sightline", &c.sightline, c.sightline.by)
+	l.fill("defaults", "sightline", m, &c.sightline, c.sightline.by, "defaults")
+	spectrum := l.table("defaults", "spectrum", m)
 	for _, k := range []string{"file", "continuum_file"} {
-		if _, ok := c.spectrum[k]; ok {
+		if _, ok := spectrum[k]; ok {
 			l.bad("defaults: spectrum: "+k, "move it to the [[sightline.spectrum]]", "cannot be the same for all spectra")
 		}
 	}
-	l.fill("defaults: spectrum", "sightline.spectrum", c.spectrum, &Spectrum{}, nil, "")
+	l.defaults("sightline.spectrum", &c.spectrum, c.spectrum.by)
+	l.fill("defaults: spectrum", "sightline.spectrum", spectrum, &c.spectrum, c.spectrum.by, "defaults")
 	for i, t := range c.lines {
 		where := nth("defaults: line", i)
 		l.required(where, "sightline.line", t)
@@ -54,9 +70,7 @@ func (l *loader) layer(s *Sightline, def common, where string, m map[string]any,
 		s.Spectra = nil
 		for i, t := range list {
 			place := nth(at(where, "spectrum"), i)
-			sp := Spectrum{by: origins{}}
-			l.defaults("sightline.spectrum", &sp, sp.by)
-			(&loader{}).fill("", "sightline.spectrum", def.spectrum, &sp, sp.by, "defaults")
+			sp := def.newSpectrum()
 			if l.read(place, "sightline.spectrum", t, &sp, sp.by, origin) {
 				l.checkSpectrum(place, &sp)
 			}
@@ -109,17 +123,10 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 		m     map[string]any // its own keys; nil: only named
 		own   bool           // named by the sightline itself
 	}
-	look := func(where, name string) (atomic.Line, bool) {
-		a, err := l.tab.Find(name)
-		if err != nil {
-			l.wrap(where, err)
-		}
-		return a, err == nil
-	}
 	var own, shared, list []entry
 	for i, t := range def.lines {
 		if name, ok := t["name"].(string); ok {
-			if a, ok := look(nth("defaults: line", i)+": name", name); ok {
+			if a, ok := l.find(nth("defaults: line", i)+": name", name); ok {
 				if slices.ContainsFunc(shared, func(e entry) bool { return e.line.Name == a.Name }) {
 					l.bad(nth("defaults: line", i), "keep one of them", "%s is there twice", a.Name)
 				}
@@ -128,7 +135,7 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 		}
 	}
 	for _, r := range x.raw {
-		if a, ok := look(at(r.where, "name"), r.m["name"].(string)); ok {
+		if a, ok := l.find(at(r.where, "name"), r.m["name"].(string)); ok {
 			own = append(own, entry{a, r.where, r.m, true})
 		} else {
 			l.fill(r.where, "sightline.line", r.m, &Line{}, nil, "")
@@ -139,7 +146,7 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 		at0 = "defaults: lines"
 	}
 	for i, name := range x.Named {
-		if a, ok := look(nth(at0, i), name); ok {
+		if a, ok := l.find(nth(at0, i), name); ok {
 			if slices.ContainsFunc(list, func(e entry) bool { return e.line.Name == a.Name }) {
 				l.bad(nth(at0, i), "keep one of them", "%s is there twice", a.Name)
 				continue
@@ -250,19 +257,9 @@ func (l *loader) wrap(where string, err error) {
 // places for messages.
 func (l *loader) sightlines(s *Survey, def common, rows []row, own []map[string]any) []string {
 	var places, names []string
-	quiet := &loader{}
-	start := func() Sightline {
-		x := Sightline{by: origins{}}
-		l.defaults("sightline", &x, x.by)
-		quiet.fill("", "sightline", def.own, &x, x.by, "defaults")
-		if _, ok := def.own["lines"]; ok {
-			x.linesAt = ""
-		}
-		return x
-	}
 	byName := map[string]int{}
 	for _, r := range rows {
-		x := start()
+		x := def.newSightline()
 		l.layer(&x, def, r.where, r.m, "catalogue")
 		if _, ok := byName[x.Name]; !ok {
 			byName[x.Name] = len(s.Sightlines)
@@ -285,7 +282,7 @@ func (l *loader) sightlines(s *Survey, def common, rows []row, own []map[string]
 			places[j] = where
 			continue
 		}
-		x := start()
+		x := def.newSightline()
 		l.layer(&x, def, where, m, "")
 		s.Sightlines = append(s.Sightlines, x)
 		places = append(places, where)

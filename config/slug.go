@@ -31,6 +31,9 @@ func Slug(name string) string {
 	if len(s) > longest {
 		s = s[:longest]
 	}
+	if reserved(s) {
+		s = "_" + s
+	}
 	h := sha256.Sum256([]byte(name))
 	return s + "~" + hex.EncodeToString(h[:6])
 }
