@@ -11,6 +11,9 @@ const (
 	// Below this damping exp(−z²) still shows beside the asymptotic series of
 	// Re w at |u| = 8; above it, less than one part in 10¹⁷.
 	tiny = 1e-10
+	// From this u on, 8 coefficients do not give 13 digits of exp(−u²), which is
+	// all of Re w when a is tiny.
+	sharp = 4.0
 	// exp(−u²) is zero in doubles from here on.
 	gone = 27.5
 )
@@ -75,7 +78,7 @@ func H(a, u float64) float64 {
 // upper returns w(u + ia) for a ≥ 0, u ≥ 0, neither NaN.
 func upper(a, u float64) (re, im float64) {
 	if u < near && a <= thick {
-		if a <= thin {
+		if a <= thin && (u < sharp || a >= tiny) {
 			return taylor8(a, u)
 		}
 		return taylor14(a, u)

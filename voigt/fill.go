@@ -10,7 +10,7 @@ import "math"
 //
 // All slices have the length of u, or Fill panics; hu and ha may be nil. h is as
 // accurate as H. In the wings (|z| ≥ 8) the derivatives come from a series of
-// their own and keep 13 digits; nearer the centre they are good to 1e-13 of the
+// their own and keep 12 digits; nearer the centre they are good to 2e-13 of the
 // larger of their terms.
 //
 // Where u ascends, the ranges of the different series are found once and each is
@@ -35,12 +35,12 @@ func Fill(h, hu, ha []float64, a float64, u []float64) {
 		return
 	}
 	all := r
-	r8, r9, r4, r2 := near, far9, far4, far2
+	r8, r9, r5, r3 := near, far9, far5, far3
 	if a > thick { // the series go by |z|; in the strip |u| does as well
-		r8, r9, r4, r2 = reach(near, a), reach(far9, a), reach(far4, a), reach(far2, a)
+		r8, r9, r5, r3 = reach(near, a), reach(far9, a), reach(far5, a), reach(far3, a)
 	}
-	r.upTo(-r2).series2()
-	r.upTo(-r4).series4()
+	r.upTo(-r3).series3()
+	r.upTo(-r5).series5()
 	r.upTo(-r9).series9()
 	r.upTo(-r8).series14()
 	core := r.below(r8)
@@ -55,13 +55,15 @@ func Fill(h, hu, ha []float64, a float64, u []float64) {
 		core.trapezoid()
 	}
 	r.below(r9).series14()
-	r.below(r4).series9()
-	r.below(r2).series4()
-	r.series2()
-	if a < tiny {
+	r.below(r5).series9()
+	r.below(r3).series5()
+	r.series3()
+	if a < tiny { // exp(−u²) shows: as in upper and beyond
 		all.upTo(-gone)
 		all.upTo(-near).addGauss()
-		all.below(near)
+		all.upTo(-sharp).taylor14()
+		all.below(sharp)
+		all.below(near).taylor14()
 		all.below(gone).addGauss()
 	}
 }
@@ -165,8 +167,7 @@ func (r run) taylor8() {
 	}
 }
 
-// taylor8H is taylor8 for H alone. It spares the last Dawson coefficient, which
-// enters Re w times a ζ⁶ < 1e-13 of itself.
+// taylor8H is taylor8 for H alone, written out: most calls want no more.
 func (r run) taylor8H() {
 	u := r.u
 	h, a := r.h[:len(u)], r.a
@@ -178,14 +179,15 @@ func (r run) taylor8H() {
 		d := u - float64(n)*(1.0/64)
 		p, q := 2*d, d*d+aa
 		r1, r0 := c[12]+p*c[14], c[10]-q*c[14]
-		s1, s0 := c[11]+p*c[13], c[9]-q*c[13]
+		s1, s0 := c[13]+p*c[15], c[11]-q*c[15]
 		r1, r0 = r0+p*r1, c[8]-q*r1
-		s1, s0 = s0+p*s1, c[7]-q*s1
+		s1, s0 = s0+p*s1, c[9]-q*s1
 		r1, r0 = r0+p*r1, c[6]-q*r1
-		s1, s0 = s0+p*s1, c[5]-q*s1
+		s1, s0 = s0+p*s1, c[7]-q*s1
 		r1, r0 = r0+p*r1, c[4]-q*r1
-		s1, s0 = s0+p*s1, c[3]-q*s1
+		s1, s0 = s0+p*s1, c[5]-q*s1
 		r1, r0 = r0+p*r1, c[2]-q*r1
+		s1, s0 = s0+p*s1, c[3]-q*s1
 		r1, r0 = r0+p*r1, c[0]-q*r1
 		h[i] = r0 + d*r1 - a*(s0+p*s1)
 	}

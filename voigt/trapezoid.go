@@ -31,9 +31,9 @@ func trapezoid(a, u float64) (re, im float64) {
 		im += g * (m - t)
 	}
 	re, im = 2*a*re, 2*u*im
-	e := -dif - 4*math.Pi*a // log |exp(−z²) E|
-	if e < -42 {
-		return re, im // the pole adds less than one part in 10¹⁶
+	e := -dif - 4*math.Pi*a       // log |exp(−z²) E|
+	if e < -42 || a > 2*math.Pi { // nothing in 10¹⁶, or the pole beyond the strip π/h
+		return re, im
 	}
 	phase := 2 * math.Pi * f // of E, whole turns taken off
 	sin, cos := math.Sincos(phase - 2*u*a)
