@@ -81,6 +81,10 @@ func (s *Segment) Motion() (float64, bool) {
 func solar(k frame.Kind) bool    { return k == frame.Heliocent || k == frame.Barycentric }
 func observer(k frame.Kind) bool { return k == frame.Topocentric || k == frame.Geocentric }
 
+// byUserWord is the keyword of a correction that the user gave: it comes first in
+// Shift and wins.
+const byUserWord = "user"
+
 // find returns the index of a correction to that frame, done or not, or of one
 // to the other solar frame; −1 if there is none.
 func (s *Segment) find(to frame.Kind, done bool) int {
@@ -89,7 +93,7 @@ func (s *Segment) find(to frame.Kind, done bool) int {
 		if a.Done != done {
 			continue
 		}
-		if a.To == to {
+		if a.To == to || a.Keyword == byUserWord && solar(a.To) && solar(to) {
 			return i
 		}
 		if solar(a.To) && solar(to) && other < 0 {

@@ -92,9 +92,11 @@ func (r *reader) medium(c cards, k clue, in instrument, first float64) (frame.Me
 		}
 	}
 	if v, ok := k.meta["medium"]; ok {
-		if m, err := frame.ParseMedium(v); err == nil {
+		m, err := frame.ParseMedium(v)
+		if err == nil {
 			return m, "medium in the header"
 		}
+		r.s.Notes = append(r.s.Notes, fmt.Sprintf("medium '%s' in the header is not known", v))
 	}
 	switch col := strings.ToLower(k.column); {
 	case strings.HasSuffix(col, "_air"), strings.Contains(col, "air_"), strings.HasPrefix(col, "awav"):
@@ -150,6 +152,9 @@ func (r *reader) velocityFrame(s *Segment, c cards, k clue, in instrument) (fram
 	}
 	if v, ok := c.maybe("BSS_VHEL"); ok && v == 0 {
 		return frame.Topocentric, "BSS_VHEL = 0"
+	}
+	if r.o.Correction != nil {
+		return frame.Topocentric, "user: a correction is given"
 	}
 	return frame.Unknown, "the file does not say"
 }
@@ -224,7 +229,10 @@ func (r *reader) corrections(s *Segment, c cards, k clue) {
 		if to == frame.Unknown {
 			to = frame.Heliocent
 		}
-		add("user", to, *r.o.Correction)
+		add(byUserWord, to, *r.o.Correction)
+		if !observer(s.Frame) {
+			s.note("the user's correction of %+.3f km/s is not applied: wavelengths are %s (%s)", *r.o.Correction, s.Frame, s.FrameBy)
+		}
 	}
 	for _, key := range solarKeys {
 		if v, ok := r.kms(s, c, key.name); ok {

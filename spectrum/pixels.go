@@ -114,8 +114,7 @@ func bridge(wave []float64, lost []int) {
 	for !ok[last] {
 		last--
 	}
-	// The ends go on with the mean step, halved so that they cannot pass zero
-	// or overflow.
+	// The ends go on with the mean step, but never below half of what is there.
 	step := (wave[last] - wave[first]) / float64(last-first)
 	for a := first; a < last; {
 		b := a + 1
@@ -127,11 +126,13 @@ func bridge(wave []float64, lost []int) {
 		}
 		a = b
 	}
+	down := max(-step, -0.5*wave[first]/float64(first+1)) // towards the start of an ascending segment
 	for i := first - 1; i >= 0; i-- {
-		wave[i] = wave[i+1] - step
+		wave[i] = wave[i+1] + down
 	}
+	up := max(step, -0.5*wave[last]/float64(len(wave)-last)) // towards the end of a descending one
 	for i := last + 1; i < len(wave); i++ {
-		wave[i] = wave[i-1] + step
+		wave[i] = wave[i-1] + up
 	}
 }
 
@@ -205,10 +206,10 @@ func (s *Segment) zeroCounts() int {
 			b++
 		}
 		left := a - 1
-		for left >= 0 && !usable(left) && s.Mask[left]&ZeroCount == 0 {
+		for left >= 0 && !usable(left) {
 			left--
 		}
-		if left < 0 || b == n || s.Mask[left]&ZeroCount != 0 {
+		if left < 0 || b == n {
 			a = b
 			continue
 		}

@@ -170,11 +170,42 @@ func (r *reader) cells(h *fits.HDU, p picked) error {
 			px.bad = p.flags(v)
 			s.note("%s", p.polarity(h.Cols[p.mask].Name))
 		}
+		if err := r.trim(h, row, &px); err != nil {
+			return err
+		}
 		if err := r.add(h, &s, px, p); err != nil {
 			return err
 		}
 	}
 	return r.rowThere(h)
+}
+
+// trim keeps the first NELEM values where the table has a column that counts
+// them; the rest is filler.
+func (r *reader) trim(h *fits.HDU, row int64, px *pixels) error {
+	i := h.Col("NELEM")
+	if i < 0 || h.Cols[i].Repeat != 1 {
+		return nil
+	}
+	v, err := h.Cell(i, row)
+	if err != nil {
+		return err
+	}
+	if len(v) != 1 || !(v[0] >= 1) || v[0] > float64(len(px.wave)) {
+		return h.Fail(fmt.Sprintf("row %d: NELEM = %v, but cells have %d values", row+1, v, len(px.wave)), "the table is damaged")
+	}
+	n := int(v[0])
+	px.wave, px.flux = px.wave[:n], px.flux[:n]
+	if px.err != nil {
+		px.err = px.err[:n]
+	}
+	if px.cont != nil {
+		px.cont = px.cont[:n]
+	}
+	if px.bad != nil {
+		px.bad = px.bad[:n]
+	}
+	return nil
 }
 
 // add converts, decides and keeps a segment of a table.

@@ -139,12 +139,23 @@ func (r *reader) sheet(text string) (*sheet, error) {
 // separator looks at one line.
 func separator(line string) byte {
 	switch {
-	case strings.Contains(line, ";"):
+	case strings.Contains(line, ";") && !numbersBefore(line):
 		return ';'
-	case strings.Contains(line, ","):
+	case strings.Contains(firstPart(line, ";"), ","):
 		return ','
 	}
 	return ' '
+}
+
+// numbersBefore reports whether several numbers stand before the first
+// semicolon, which then begins a comment.
+func numbersBefore(line string) bool {
+	words := strings.Fields(firstPart(line, ";"))
+	if len(words) < 2 {
+		return false
+	}
+	_, ok := cell(words[0])
+	return ok
 }
 
 // cutComment returns where a comment begins after data, or −1.
