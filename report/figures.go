@@ -10,9 +10,7 @@ import (
 // config.Slug of the sightline's name, so that no two sightlines share one.
 func Figures(r survey.Record) []Figure {
 	out := LineFigures(r)
-	for _, g := range r.Result.Growth {
-		out = append(out, GrowthFigure(r.Name, g))
-	}
+	out = append(out, GrowthFigures(r)...)
 	if f, ok := DepletionFigure(r); ok {
 		out = append(out, f)
 	}
@@ -22,4 +20,13 @@ func Figures(r survey.Record) []Figure {
 // figureName is the file stem of a sightline's figure.
 func figureName(sightline, what string) string {
 	return config.Slug(sightline) + "-" + what
+}
+
+// GrowthFigures returns a figure for each curve of growth of a sightline.
+func GrowthFigures(r survey.Record) []Figure {
+	var out []Figure
+	for _, g := range r.Result.Growth {
+		out = append(out, GrowthFigure(r.Name, g))
+	}
+	return out
 }

@@ -151,6 +151,7 @@ func lantern1() survey.Record {
 		Doublets: []measure.Doublet{{Species: "Na I", Strong: naD2.name, Weak: naD1.name,
 			Delta: dex(0.21, 0.02), Corrected: budget.Number{X: math.NaN()}, Refused: "difference 0.21 dex exceeds 0.15"}},
 		Hydrogen: h,
+		Rows:     []survey.Row{{Table: "lines", Key: "Ca II 3933.66 f", Value: "0.6267", Source: "AuthorA2001", Status: "verified"}},
 		Depletions: []abundance.Depletion{
 			{Element: "Ca", Species: []string{"Ca II"}, D: budget.Number{X: math.NaN(), Flag: budget.Trace}, Scale: "asplund2021", Solar: 6.30, SolarErr: 0.03, Refused: "trace ion: needs ionization correction"},
 			{Element: "Na", Species: []string{"Na I"}, D: budget.Number{X: math.NaN(), Flag: budget.Trace}, Scale: "asplund2021", Solar: 6.22, SolarErr: 0.03, Refused: "trace ion: needs ionization correction"},

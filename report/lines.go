@@ -280,11 +280,14 @@ func (s *stack) drawFlux(p panel, b block) {
 		p.FillText(letters(textSize, ink, text.XCenter, text.YCenter), p.Center(), "no usable pixels")
 		return
 	}
+	below := p // the part of the panel below the names
+	below.Max.Y = p.py(hi)
+	below.Y.Hi = hi
 	if w.Window[1] > w.Window[0] {
-		p.column(paleBlue, w.Window[0], w.Window[1])
+		below.column(paleBlue, w.Window[0], w.Window[1])
 	}
 	for _, sp := range spans(pr.V, func(i int) bool { return value(pr.Bad, i) }) {
-		p.column(paleGrey, sp[0], sp[1])
+		below.column(paleGrey, sp[0], sp[1])
 	}
 	p.drawPlacement(pr)
 	p.horizontal(stroke(midGrey, hair, 1, 1.5), 0)
@@ -294,7 +297,7 @@ func (s *stack) drawFlux(p panel, b block) {
 	p.horizontal(stroke(vermilion, fine, 3, 1.5), 1)
 	if w.Window[1] > w.Window[0] {
 		for _, edge := range w.Window {
-			p.vertical(stroke(blue, hair, 2, 1.2), edge)
+			below.vertical(stroke(blue, hair, 2, 1.2), edge)
 		}
 	}
 	x, y := outline(pr.V, pr.Flux, func(i int) bool { return value(pr.Bad, i) && i < len(pr.Flux) })
@@ -344,7 +347,7 @@ func (s *stack) drawNa(p panel, b block, lowest bool) {
 	if top > 0 {
 		low = math.Max(low, -top)
 		p.Y = axis{Lo: math.Min(1.15*low, -0.08*top), Hi: 1.18 * top, Ticks: []tick{{0, "0"}}}
-		step, mantissa, exp := niceBelow(0.82 * p.Y.Hi)
+		step, mantissa, exp := niceBelow(0.86 * p.Y.Hi)
 		if float64(p.py(step)-p.py(0)) < textSize+1 { // no room for two labels
 			p.Y.Ticks = nil
 		}

@@ -23,7 +23,7 @@ var (
 	paleBlue   = color.NRGBA{0xE3, 0xEE, 0xF6, 255} // integration range
 	midBlue    = color.NRGBA{0xB5, 0xD3, 0xE8, 255} // area under N_a(v)
 	paleOrange = color.NRGBA{0xF9, 0xE3, 0xB4, 255} // placement of the continuum
-	paleGrey   = color.NRGBA{0xDD, 0xDD, 0xDD, 255} // masked pixels
+	paleGrey   = color.NRGBA{0xCA, 0xCA, 0xCA, 255} // masked pixels
 	midGrey    = color.NRGBA{0x80, 0x80, 0x80, 255}
 )
 

@@ -7,7 +7,6 @@ import (
 
 	"lacuna/abundance"
 	"lacuna/budget"
-	"lacuna/cog"
 	"lacuna/measure"
 	"lacuna/spectrum/frame"
 	"lacuna/survey"
@@ -206,44 +205,6 @@ func doubletText(d measure.Doublet) string {
 		s += "; log N corrected for saturation: " + c.text()
 	}
 	return s
-}
-
-func (p *page) growth(gs []cog.Result) {
-	g := &grid{indent: 2, align: "lnnlf", head: []string{"growth curve", "log N", "b (km/s)", "χ² / dof", "remarks"}}
-	for _, r := range gs {
-		for i, n := range r.LogN {
-			name := value(r.Levels, i)
-			if name == "" {
-				name = r.Species
-			} else if !strings.HasPrefix(name, r.Species) {
-				name = r.Species + " " + name
-			}
-			b, chi, note := cell{}, "", ""
-			if i == 0 {
-				b = cell{text: printNumber(r.B, 1, 2).text()}
-				chi = fmt.Sprintf("%.1f / %d", r.Chi2, r.DOF)
-				note = growthRemarks(r)
-			}
-			g.add(plainCell(name), logCell(n), b, plainCell(chi), plainCell(note))
-		}
-	}
-	p.grid(g)
-}
-
-func growthRemarks(r cog.Result) string {
-	parts := []string{}
-	if len(r.Lines) > 0 {
-		parts = append(parts, count(len(r.Lines), "line"))
-	}
-	for _, c := range r.Contours {
-		if c.Open != "" {
-			parts = append(parts, fmt.Sprintf("Δχ² = %.2f stays open in %s", c.Delta, c.Open))
-		}
-	}
-	if r.Stop != "" && r.Stop != "converged" {
-		parts = append(parts, "stopped: "+r.Stop)
-	}
-	return strings.Join(append(parts, r.Notes...), "; ")
 }
 
 func (p *page) adopted(cols []abundance.Column) {

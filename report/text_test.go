@@ -53,7 +53,10 @@ func texts() map[string]func(o Options) ([]byte, error) {
 		"summary": write(func(b *bytes.Buffer, o Options) error { return Summary(b, everything(), o) }),
 		"width":   write(func(b *bytes.Buffer, o Options) error { return WidthText(b, r.Result.Widths[1], frame.Heliocent, o) }),
 		"limit":   write(func(b *bytes.Buffer, o Options) error { return WidthText(b, r.Result.Widths[4], frame.Heliocent, o) }),
-		"growth":  write(func(b *bytes.Buffer, o Options) error { return GrowthText(b, q.Name, q.Result.Growth, o) }),
+		"growth":  write(func(b *bytes.Buffer, o Options) error { return GrowthText(b, []survey.Record{q, hard()[2]}, o) }),
+		"batch": write(func(b *bytes.Buffer, o Options) error {
+			return GrowthText(b, []survey.Record{q, everything()[2], hard()[2], r}, o)
+		}),
 		"depletion": write(func(b *bytes.Buffer, o Options) error {
 			return DepletionText(b, q.Name, q.Result.Depletions, q.Result.Hydrogen, o)
 		}),
@@ -67,7 +70,7 @@ func texts() map[string]func(o Options) ([]byte, error) {
 				func() error { return Summary(b, nil, o) },
 				func() error { return Summary(b, []survey.Record{{}}, o) },
 				func() error { return WidthText(b, measure.Width{}, frame.Unknown, o) },
-				func() error { return GrowthText(b, "", nil, o) },
+				func() error { return GrowthText(b, nil, o) },
 				func() error { return DepletionText(b, "", nil, nil, o) },
 				func() error { return LinesText(b, nil, o) },
 				func() error { return InspectText(b, "", &spectrum.Spectrum{}, nil, o) },

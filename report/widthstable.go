@@ -99,7 +99,7 @@ func Widths(rs []survey.Record) *table.Table {
 }
 
 func widthRow(r survey.Record, w measure.Width) []table.Cell {
-	row := rowOf(r, "lines", w.Line)
+	row := rowOf(r, "lines", w.Line+" f")
 	by := "user"
 	if w.AutoWindow {
 		by = "automatic"
