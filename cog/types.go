@@ -17,6 +17,25 @@ type Point struct {
 	Sigma  float64        // of the limit
 }
 
+// A Level is one column density: the widths of the lines that start from one
+// level of a species.
+type Level struct {
+	Name   string // carrier: "CN N=1", "C I*", "Fe II"
+	Points []Point
+}
+
+// Options of a fit; 0 stands for the default.
+type Options struct {
+	Key        string  // goes into the keys of shifts that are private to this sightline: its name
+	BMin, BMax float64 // km/s, bounds of b; 0.3 and 30
+	// Where the widths do not constrain b, N is taken at B and its error spans BLow
+	// to BHigh (km/s). Defaults: 1 for molecules, 2 for atoms; half and twice B. A
+	// species whose default lies outside BMin .. BMax uses the nearer bound.
+	B, BLow, BHigh float64
+	Sigma          float64 // of limits, in σ; 3
+	NoContours     bool    // for batches that draw none
+}
+
 // A Result is N and b of one species (or of several levels that share one b).
 type Result struct {
 	Species  string          `json:"species"`
@@ -29,6 +48,15 @@ type Result struct {
 	Contours []Contour       `json:"contours,omitempty"` // of the first column
 	Lines    []LineResult    `json:"lines"`
 	Notes    []string        `json:"notes,omitempty"`
+
+	// The point that χ² prefers, also where LogN and B are limits: for drawing. A
+	// level without a detection has its limit in BestLogN; BestB is the assumed b
+	// where the widths do not constrain it.
+	BestLogN []float64 `json:"best_log_n"`
+	BestB    float64   `json:"best_b"`
+	// Cov is the covariance of log₁₀N of each level and ln b, row by row, from the
+	// errors of the widths alone (0 where a limit or a bound decides).
+	Cov []float64 `json:"cov"`
 }
 
 // A Contour is a curve of equal Δχ² in the plane of log N and b.
@@ -49,5 +77,7 @@ type LineResult struct {
 	Model      float64 `json:"model"`      // Å
 	Correction float64 `json:"correction"` // dex, log N − log N of the weak-line relation
 	Tau0       float64 `json:"tau0"`
-	LogNLinear float64 `json:"log_n_linear"`
+	LogNLinear float64 `json:"log_n_linear"`   // of the measured width; NaN (left out of JSON) where W is not above 0
+	LogWL      float64 `json:"log_w_lambda"`   // log₁₀(W/λ), measured; NaN as above
+	LogFNL     float64 `json:"log_f_n_lambda"` // log₁₀(f N λ) at the best fit, λ in cm
 }
