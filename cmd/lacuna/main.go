@@ -1,0 +1,205 @@
+// Command lacuna turns optical and ultraviolet stellar spectra into interstellar
+// column densities and depletions.
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"os/signal"
+	"strings"
+	"syscall"
+
+	"github.com/urfave/cli/v2"
+
+	"lacuna/internal/oops"
+	"lacuna/survey"
+)
+
+func main() {
+	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	code := run(ctx, os.Args, os.Stdout, os.Stderr)
+	stop()
+	os.Exit(code)
+}
+
+// run is the program: 0 for success, 2 for a mistake in what the user wrote or
+// gave, 1 for any other failure.
+func run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
+	app := newApp(stdout, stderr)
+	err := app.RunContext(ctx, reorder(app, args))
+	if err == nil {
+		return 0
+	}
+	var several *survey.Failed
+	if errors.As(err, &several) {
+		for _, f := range several.Errs {
+			fmt.Fprintf(stderr, "lacuna: %v\n", f)
+		}
+	} else {
+		fmt.Fprintf(stderr, "lacuna: %v\n", err)
+	}
+	var u *usageError
+	if errors.As(err, &u) || oops.IsInput(err) {
+		return 2
+	}
+	if errors.As(err, &several) && several.Mistakes() {
+		return 2
+	}
+	return 1
+}
+
+// A usageError is a mistake on the command line.
+type usageError struct{ text string }
+
+func (e *usageError) Error() string { return e.text }
+
+func usage(c *cli.Context, format string, a ...any) error {
+	name := strings.TrimSpace("lacuna " + c.Command.Name)
+	return &usageError{fmt.Sprintf(format, a...) + "; see " + strings.TrimSpace(name+" --help")}
+}
+
+func newApp(stdout, stderr io.Writer) *cli.App {
+	cli.VersionPrinter = func(c *cli.Context) { fmt.Fprintln(c.App.Writer, "lacuna "+survey.Version()) }
+	app := &cli.App{
+		Name:                  "lacuna",
+		Usage:                 "stellar spectra → interstellar column densities and depletions",
+		Version:               survey.Version(),
+		Writer:                stdout,
+		ErrWriter:             stderr,
+		EnableBashCompletion:  true,
+		HideHelpCommand:       false,
+		Suggest:               false,
+		CustomAppHelpTemplate: appHelp,
+		ExitErrHandler:        func(*cli.Context, error) {}, // only main exits
+		OnUsageError: func(c *cli.Context, err error, _ bool) error {
+			return &usageError{err.Error() + "; see lacuna --help"}
+		},
+		Commands: []*cli.Command{
+			demoCommand(), newCommand(), runCommand(), measureCommand(), growthCommand(),
+			depleteCommand(), linesCommand(), inspectCommand(), completionCommand(),
+		},
+		Action: func(c *cli.Context) error {
+			if !c.Args().Present() {
+				return cli.ShowAppHelp(c)
+			}
+			return unknownCommand(c)
+		},
+	}
+	for _, cmd := range app.Commands {
+		cmd.CustomHelpTemplate = commandHelp
+		cmd.OnUsageError = func(c *cli.Context, err error, _ bool) error {
+			return &usageError{flagError(c, err) + "; see lacuna " + c.Command.Name + " --help"}
+		}
+	}
+	return app
+}
+
+func unknownCommand(c *cli.Context) error {
+	var names []string
+	for _, cmd := range c.App.Commands {
+		names = append(names, cmd.Name)
+	}
+	word := c.Args().First()
+	fix := "lacuna --help lists the commands"
+	if near := oops.Nearest(word, names, 1); len(near) > 0 {
+		fix = fmt.Sprintf("did you mean lacuna %s? %s", near[0], fix)
+	}
+	return &usageError{fmt.Sprintf("there is no command %q; %s", word, fix)}
+}
+
+// flagError adds the nearest option to the library's message on an unknown one.
+func flagError(c *cli.Context, err error) string {
+	msg := err.Error()
+	if word, ok := strings.CutPrefix(msg, "flag provided but not defined: "); ok {
+		var names []string
+		for _, f := range c.Command.Flags {
+			for _, n := range f.Names() {
+				names = append(names, "--"+n)
+			}
+		}
+		word = "--" + strings.TrimLeft(word, "-")
+		msg = "there is no option " + word
+		if near := oops.Nearest(word, names, 1); len(near) > 0 {
+			msg += " (did you mean " + near[0] + "?)"
+		}
+	}
+	return msg
+}
+
+// reorder moves options before the other arguments of a command, because the
+// library stops looking for options at the first argument. Everything after "--"
+// stays as it is.
+func reorder(app *cli.App, args []string) []string {
+	if len(args) < 3 {
+		return args
+	}
+	var cmd *cli.Command
+	at := 1
+	for ; at < len(args); at++ {
+		if !strings.HasPrefix(args[at], "-") {
+			cmd = app.Command(args[at])
+			break
+		}
+	}
+	if cmd == nil {
+		return args
+	}
+	takesValue := map[string]bool{}
+	for _, f := range cmd.Flags {
+		_, isBool := f.(*cli.BoolFlag)
+		for _, n := range f.Names() {
+			takesValue[n] = !isBool
+		}
+	}
+	out := append([]string{}, args[:at+1]...)
+	var rest []string
+	for i := at + 1; i < len(args); i++ {
+		a := args[i]
+		switch {
+		case a == "--":
+			rest = append(rest, args[i+1:]...)
+			i = len(args)
+		case strings.HasPrefix(a, "-") && a != "-":
+			out = append(out, a)
+			name := strings.TrimLeft(a, "-")
+			if !strings.Contains(name, "=") && takesValue[name] && i+1 < len(args) {
+				i++
+				out = append(out, args[i])
+			}
+		default:
+			rest = append(rest, a)
+		}
+	}
+	if len(rest) > 0 {
+		out = append(append(out, "--"), rest...)
+	}
+	return out
+}
+
+const appHelp = `{{.Name}}: {{.Usage}}
+
+Usage: lacuna COMMAND [options] [files]
+
+Commands:{{range .VisibleCommands}}
+  {{printf "%-11s" .Name}} {{.Usage}}{{end}}
+
+lacuna COMMAND --help explains one command, with an example. Options may stand before
+or after file names. Results go to standard output, messages to standard error. Exit
+code: 0 success, 2 a mistake in what was given, 1 any other failure. NO_COLOR is respected.
+
+First steps: lacuna demo       runs the whole job on an invented survey
+             lacuna new DIR    writes a commented survey file to start from
+`
+
+const commandHelp = `lacuna {{.Name}}: {{.Usage}}
+
+Usage: lacuna {{.Name}} {{.ArgsUsage}}
+{{if .Description}}
+{{.Description}}
+{{end}}
+Options:{{range .VisibleFlags}}
+  {{.}}{{end}}
+`

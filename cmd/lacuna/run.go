@@ -1,0 +1,198 @@
+package main
+
+import (
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+	"slices"
+
+	"github.com/urfave/cli/v2"
+
+	"lacuna/config"
+	"lacuna/internal/oops"
+	"lacuna/report"
+	"lacuna/survey"
+)
+
+func runCommand() *cli.Command {
+	return &cli.Command{
+		Name: "run", Usage: "the whole chain for every sightline of a survey file",
+		ArgsUsage: "SURVEY.toml [--out DIR] [--only NAME]",
+		Description: `Reads each sightline's spectra, puts them on vacuum wavelengths and the survey's
+velocity frame, places the continuum, measures every line, and turns widths into columns
+(weak line, apparent optical depth, curve of growth), sums by species and depletions.
+The results folder gets journal.jsonl (everything), widths, columns, growth and depletions
+as ECSV, figures as SVG, and manifest.json. Sightlines whose inputs have not changed since
+the last run are taken from the journal.
+
+Example: lacuna run survey.toml --out results --only "Lantern 1"`,
+		Flags: []cli.Flag{
+			&cli.StringFlag{Name: "out", Usage: "results folder `DIR`; else \"results\" beside the survey file"},
+			&cli.StringSliceFlag{Name: "only", Usage: "run only the sightline `NAME`; may be repeated"},
+			&cli.BoolFlag{Name: "dry-run", Usage: "print the fully resolved configuration and stop"},
+			&cli.BoolFlag{Name: "fresh", Usage: "measure again even what the journal has"},
+			&cli.IntFlag{Name: "workers", Usage: "sightlines at a time `N`; else one a core"},
+			&cli.BoolFlag{Name: "json", Usage: "print the records as JSON"},
+		},
+		Action: func(c *cli.Context) error {
+			path, err := one(c, "survey file")
+			if err != nil {
+				return err
+			}
+			cfg, err := config.Load(path)
+			if err != nil {
+				return err
+			}
+			if c.Bool("dry-run") {
+				_, err := c.App.Writer.Write(cfg.Resolved())
+				return err
+			}
+			if err := cfg.CheckFiles(); err != nil {
+				return err
+			}
+			out := c.String("out")
+			if out == "" {
+				out = filepath.Join(cfg.Dir, "results")
+			}
+			for _, n := range cfg.Notes {
+				fmt.Fprintln(c.App.ErrWriter, "note:", n)
+			}
+			return runSurvey(c, cfg, out)
+		},
+	}
+}
+
+// runSurvey runs a survey into a folder and prints the summary.
+func runSurvey(c *cli.Context, cfg *config.Survey, out string) error {
+	if err := os.MkdirAll(out, 0o755); err != nil {
+		return fmt.Errorf("results folder: %w", err)
+	}
+	records, runErr := survey.RunInto(c.Context, cfg, out, survey.RunOptions{
+		Only: c.StringSlice("only"), Workers: c.Int("workers"), Fresh: c.Bool("fresh"), Command: os.Args[1:],
+		Progress: func(done, of int, name string) { progress(c, done, of, name) },
+		Warn:     func(s string) { fmt.Fprintln(c.App.ErrWriter, "note:", s) },
+	})
+	var failed *survey.Failed
+	if runErr != nil && !errors.As(runErr, &failed) {
+		return runErr
+	}
+	// Tables and figures are made from the whole journal, so a run of one
+	// sightline refreshes its part and keeps the rest.
+	all, err := survey.Current(out, cfg)
+	if err != nil {
+		return err
+	}
+	if err := report.WriteResults(out, all); err != nil {
+		return fmt.Errorf("writing results: %w", err)
+	}
+	if c.Bool("json") {
+		if err := report.JSON(c.App.Writer, records); err != nil {
+			return err
+		}
+		return runErr
+	}
+	if err := report.Summary(c.App.Writer, records, textOptions()); err != nil {
+		return err
+	}
+	fmt.Fprintf(c.App.Writer, "\nResults: %s (widths.ecsv, columns.ecsv, depletions.ecsv, figures/)\n", out)
+	return runErr
+}
+
+func textOptions() report.Options {
+	return report.Options{Width: width(), Color: colour(), ASCII: ascii()}
+}
+
+func newCommand() *cli.Command {
+	return &cli.Command{
+		Name: "new", Usage: "write a commented starter survey into a folder",
+		ArgsUsage: "DIR",
+		Description: `Writes DIR/survey.toml and DIR/growth.toml with every key explained. Existing files are
+never overwritten.
+
+Example: lacuna new my-survey`,
+		Action: func(c *cli.Context) error {
+			dir, err := one(c, "folder")
+			if err != nil {
+				return err
+			}
+			if err := os.MkdirAll(dir, 0o755); err != nil {
+				return err
+			}
+			files := []struct {
+				name string
+				text []byte
+			}{{"survey.toml", config.Starter()}, {"growth.toml", config.StarterGrowth()}}
+			for _, f := range files {
+				if _, err := os.Lstat(filepath.Join(dir, f.name)); err == nil {
+					return oops.Input(filepath.Join(dir, f.name), "", "it is there already", "choose another folder, or move it away")
+				}
+			}
+			for _, f := range files {
+				p := filepath.Join(dir, f.name)
+				if err := writeFile(p, f.text); err != nil {
+					return err
+				}
+				fmt.Fprintln(c.App.Writer, "wrote", p)
+			}
+			fmt.Fprintf(c.App.Writer, "next: put your spectra beside it, name them in %s, then lacuna run %[1]s\n", filepath.Join(dir, "survey.toml"))
+			return nil
+		},
+	}
+}
+
+func completionCommand() *cli.Command {
+	return &cli.Command{
+		Name: "completion", Usage: "print a shell completion script",
+		ArgsUsage:   "bash|zsh|fish",
+		Description: `Example: lacuna completion bash > ~/.local/share/bash-completion/completions/lacuna`,
+		Action: func(c *cli.Context) error {
+			shell, err := one(c, "shell")
+			if err != nil {
+				return err
+			}
+			script, ok := completions[shell]
+			if shell == "fish" {
+				script, err = c.App.ToFishCompletion()
+				ok = true
+			}
+			if err != nil {
+				return err
+			}
+			if !ok {
+				return usage(c, "no completion for %q: bash, zsh or fish", shell)
+			}
+			_, err = io.WriteString(c.App.Writer, script)
+			return err
+		},
+	}
+}
+
+var completions = map[string]string{
+	"bash": `_lacuna() {
+	local IFS=$'\n'
+	COMPREPLY=( $(compgen -W "$("${COMP_WORDS[@]:0:COMP_CWORD}" --generate-bash-completion)" -- "${COMP_WORDS[COMP_CWORD]}") )
+	[ ${#COMPREPLY[@]} -gt 0 ] || COMPREPLY=( $(compgen -f -- "${COMP_WORDS[COMP_CWORD]}") )
+}
+complete -o filenames -F _lacuna lacuna
+`,
+	"zsh": `#compdef lacuna
+_lacuna() {
+	local -a opts
+	opts=("${(@f)$("${words[@]:0:#words[@]-1}" --generate-bash-completion)}")
+	if [[ -n "${opts[1]}" ]]; then _describe 'values' opts; else _files; fi
+}
+compdef _lacuna lacuna
+`,
+}
+
+// sorted returns the keys of a set in order.
+func sorted[T any](m map[string]T) []string {
+	var out []string
+	for k := range m {
+		out = append(out, k)
+	}
+	slices.Sort(out)
+	return out
+}

@@ -1,0 +1,260 @@
+package survey
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"lacuna/atomic"
+	"lacuna/internal/oops"
+	"lacuna/measure"
+	"lacuna/spectrum"
+	"lacuna/spectrum/continuum"
+	"lacuna/spectrum/frame"
+	"lacuna/spectrum/telluric"
+)
+
+// A LineTask asks for one line in every segment that holds it.
+type LineTask struct {
+	Line       atomic.Line
+	Window     [2]float64   // km/s
+	AutoWindow bool         // Window is the range to search
+	Continuum  [][2]float64 // km/s; nil: automatic
+	Degree     int          // −1: by information criterion
+	MaxDegree  int          // 0: 3
+	B          float64      // km/s, assumed where nothing is detected; 0: by kind
+	Detection  float64      // σ; 0: 3
+	LimitSigma float64      // 0: 3
+	LimitWidth float64      // km/s; 0: twice the observed FWHM
+	Velocity   [2]float64   // km/s, where gas of the sightline is expected (for blends)
+	File       string       // "": every file
+	Order      *int         // nil: every order
+	Optional   bool         // no error where no spectrum holds it
+
+	Zero    func(file string) measure.Zero // prior, where no black core measures it
+	ContErr func(file string) float64      // relative error of a given continuum
+}
+
+// A Light is one segment on vacuum wavelengths in the frame of the results, with
+// what is needed to place telluric lines on it.
+type Light struct {
+	Seg    spectrum.Segment
+	Index  int     // of the segment in its file
+	Earth  float64 // km/s, the observer's velocity towards the star in that frame
+	Placed bool    // Earth is known
+	R      float64 // λ/FWHM, 0 unknown
+	RErr   float64 // relative
+}
+
+// covers reports whether the window of a line lies inside the segment.
+func (l Light) covers(line atomic.Line, window [2]float64) bool {
+	w := l.Seg.Wave
+	return len(w) > 1 && frame.Wavelength(line.Wave, window[0]) >= w[0] && frame.Wavelength(line.Wave, window[1]) <= w[len(w)-1]
+}
+
+// piece cuts a line's neighbourhood out of a segment and places its continuum.
+func (l Light) piece(t LineTask, table *atomic.Table) (measure.Piece, error) {
+	span := t.Window[1] - t.Window[0]
+	lo, hi := t.Window[0]-3*span, t.Window[1]+3*span
+	for _, c := range t.Continuum {
+		lo, hi = min(lo, c[0]), max(hi, c[1])
+	}
+	if len(t.Continuum) == 0 { // at least 60 pixels on each side
+		if d := pixel(l.Seg.Wave, t.Line.Wave); d > 0 {
+			lo, hi = min(lo, t.Window[0]-60*d), max(hi, t.Window[1]+60*d)
+		}
+	}
+	cut := l.Seg.Cut(frame.Wavelength(t.Line.Wave, lo), frame.Wavelength(t.Line.Wave, hi))
+	p := measure.Piece{
+		Line: t.Line, Wave: cut.Wave, Flux: cut.Flux, Err: cut.Err, Mask: cut.Mask,
+		Window: t.Window, AutoWindow: t.AutoWindow, B: t.B, LimitSigma: t.LimitSigma, LimitWidth: t.LimitWidth, File: l.Seg.Source.File, Order: l.Seg.Order,
+	}
+	if t.Zero != nil {
+		p.Zero = t.Zero(l.Seg.Source.File)
+	}
+	contErr := 0.0
+	if t.ContErr != nil {
+		contErr = t.ContErr(l.Seg.Source.File)
+	}
+	if l.R > 0 {
+		p.FWHM = atomic.C / l.R
+	}
+	p.Neighbours = l.neighbours(t, table)
+	o := continuum.Options{Degree: t.Degree, MaxDegree: t.MaxDegree, Exclude: l.exclude(t, lo, hi, table)}
+	for _, c := range t.Continuum {
+		o.Windows = append(o.Windows, [2]float64{frame.Wavelength(t.Line.Wave, c[0]), frame.Wavelength(t.Line.Wave, c[1])})
+	}
+	var err error
+	switch {
+	case cut.Continuum != nil:
+		p.Continuum, err = continuum.Given(cut.Wave, cut.Flux, cut.Err, cut.Continuum, cut.Mask, contErr, o)
+	case cut.Normalised:
+		one := make([]float64, len(cut.Wave))
+		for i := range one {
+			one[i] = 1
+		}
+		p.Continuum, err = continuum.Given(cut.Wave, cut.Flux, cut.Err, one, cut.Mask, contErr, o)
+	default:
+		p.Continuum, err = continuum.Fit(cut.Wave, cut.Flux, cut.Err, cut.Mask, o)
+	}
+	if err != nil {
+		return p, fmt.Errorf("%s in %s: %w", t.Line.Name, l.Seg.Label, err)
+	}
+	return p, nil
+}
+
+// MeasureLines measures each line in every segment that holds its window. The
+// zero level of a segment is measured first, on all black cores among the lines
+// asked for in it; it replaces a prior, never the user's word. Lines that no
+// spectrum holds are an error, or for optional ones a sentence in missing.
+func MeasureLines(lights []Light, tasks []LineTask, table *atomic.Table) (widths []measure.Width, missing []string, err error) {
+	type job struct {
+		light int
+		piece measure.Piece
+	}
+	var jobs []job
+	for _, t := range tasks {
+		found := false
+		for k, l := range lights {
+			if t.File != "" && l.Seg.Source.File != t.File || t.Order != nil && l.Seg.Order != *t.Order || !l.covers(t.Line, t.Window) {
+				continue
+			}
+			found = true
+			p, err := l.piece(t, table)
+			if err != nil {
+				return nil, nil, err
+			}
+			jobs = append(jobs, job{k, p})
+		}
+		if !found {
+			err := notCovered(lights, t)
+			if !t.Optional {
+				return nil, nil, err
+			}
+			missing = append(missing, fmt.Sprintf("%s is not measured: no spectrum holds its window", t.Line.Name))
+		}
+	}
+	for k := range lights {
+		var zeros []measure.Zero
+		for _, j := range jobs {
+			if j.light != k || j.piece.Zero.By == "user" {
+				continue
+			}
+			p := j.piece
+			cont := make([]float64, len(p.Wave))
+			p.Continuum.At(cont, p.Wave)
+			if z, ok := measure.ZeroLevel(p.Wave, p.Flux, cont, p.Continuum.Sigma, p.Continuum.Noise, p.Mask); ok {
+				zeros = append(zeros, z)
+			}
+		}
+		if len(zeros) == 0 {
+			continue
+		}
+		z := combineZeros(zeros)
+		for i := range jobs {
+			if jobs[i].light == k {
+				jobs[i].piece.Zero = z
+			}
+		}
+	}
+	for _, j := range jobs {
+		w, err := measure.Measure(j.piece)
+		if err != nil {
+			return nil, nil, err
+		}
+		widths = append(widths, w)
+	}
+	return widths, missing, nil
+}
+
+// combineZeros is the weighted mean of zero levels measured on several cores of
+// one order.
+func combineZeros(zs []measure.Zero) measure.Zero {
+	var sw, s float64
+	out := measure.Zero{By: zs[0].By}
+	for _, z := range zs {
+		w := 1 / (z.Err * z.Err)
+		sw += w
+		s += w * z.Level
+		out.Pixels += z.Pixels
+	}
+	out.Level, out.Err = s/sw, 1/math.Sqrt(sw)
+	return out
+}
+
+// notCovered says where the nearest data are.
+func notCovered(lights []Light, t LineTask) error {
+	lo, hi := frame.Wavelength(t.Line.Wave, t.Window[0]), frame.Wavelength(t.Line.Wave, t.Window[1])
+	var have []string
+	for _, l := range lights {
+		if t.File != "" && l.Seg.Source.File != t.File {
+			continue
+		}
+		w := l.Seg.Wave
+		have = append(have, fmt.Sprintf("%s %.2f to %.2f", l.Seg.Label, w[0], w[len(w)-1]))
+	}
+	if len(have) > 6 {
+		have = append(have[:6], "…")
+	}
+	what := fmt.Sprintf("no spectrum holds its window, %.2f to %.2f Å in vacuum", lo, hi)
+	if t.Order != nil {
+		what = fmt.Sprintf("order %d does not hold its window, %.2f to %.2f Å in vacuum", *t.Order, lo, hi)
+		known := false
+		for _, l := range lights {
+			known = known || l.Seg.Order == *t.Order
+		}
+		if !known {
+			what = fmt.Sprintf("there is no order %d", *t.Order)
+		}
+	}
+	return oops.Input("", t.Line.Name, what, "there is "+strings.Join(have, ", "))
+}
+
+// neighbours lists what else may absorb in the window of a line.
+func (l Light) neighbours(t LineTask, table *atomic.Table) []measure.Feature {
+	return measure.Neighbours(t.Line, t.Window, l.surroundings(t, t.Window[0], t.Window[1], table))
+}
+
+// surroundings gathers everything known that may absorb between lo and hi km/s of
+// a line, with a margin for velocities.
+func (l Light) surroundings(t LineTask, lo, hi float64, table *atomic.Table) measure.Surroundings {
+	const margin = 1500 // km/s: gas, star and Earth together
+	a, b := frame.Wavelength(t.Line.Wave, lo-margin), frame.Wavelength(t.Line.Wave, hi+margin)
+	s := measure.Surroundings{Gas: t.Velocity, Lines: table.Between(a, b), AirV: l.Earth, AirKnown: l.Placed}
+	for _, band := range atomic.Bands() {
+		if band.Wave > a && band.Wave < b {
+			s.Bands = append(s.Bands, band)
+		}
+	}
+	for _, st := range atomic.StellarLines() {
+		if st.Wave > a && st.Wave < b {
+			s.Stellar = append(s.Stellar, st)
+		}
+	}
+	for _, tl := range telluric.Near(a, b) {
+		s.Air = append(s.Air, measure.AirLine{Name: tl.Name, Wave: tl.Wave, Note: string(tl.Strength)})
+	}
+	return s
+}
+
+// exclude lists the ranges that are never continuum: the line's own window, and
+// transitions that may be strong, at the velocities of the gas.
+func (l Light) exclude(t LineTask, lo, hi float64, table *atomic.Table) [][2]float64 {
+	out := [][2]float64{{frame.Wavelength(t.Line.Wave, t.Window[0]), frame.Wavelength(t.Line.Wave, t.Window[1])}}
+	for _, f := range measure.Neighbours(t.Line, [2]float64{lo, hi}, l.surroundings(t, lo, hi, table)) {
+		if !f.Negligible && (f.Kind == "transition" || f.Kind == "telluric" && l.Placed) {
+			out = append(out, [2]float64{frame.Wavelength(f.Wave, f.Range[0]), frame.Wavelength(f.Wave, f.Range[1])})
+		}
+	}
+	return out
+}
+
+// pixel is the width in km/s of the pixels near a wavelength, 0 outside.
+func pixel(wave []float64, at float64) float64 {
+	for i := 1; i < len(wave); i++ {
+		if wave[i] >= at {
+			return math.Abs(wave[i]-wave[i-1]) / at * atomic.C
+		}
+	}
+	return 0
+}

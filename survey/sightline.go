@@ -1,0 +1,137 @@
+package survey
+
+import (
+	"fmt"
+
+	"lacuna/abundance"
+	"lacuna/config"
+	"lacuna/internal/oops"
+	"lacuna/measure"
+	"lacuna/spectrum/frame"
+)
+
+// record runs one sightline; a panic in the chain is a bug and is not caught.
+func (c *chain) record(s config.Sightline, index int, have func(string) (Record, bool)) (Record, error) {
+	rec := Record{Schema: Schema, Name: s.Name, Index: index, Status: "done"}
+	inputs, err := c.inputs(s)
+	if err == nil {
+		rec.Key, err = Key(c.cfg, s, inputs, c.table)
+	}
+	if err != nil {
+		rec.Status, rec.Error = "failed", err.Error()
+		return rec, err
+	}
+	if have != nil {
+		if old, ok := have(rec.Key); ok && old.Status == "done" {
+			old.Index = index
+			return old, nil
+		}
+	}
+	rec.Result, err = c.sightline(s)
+	rec.Result.Inputs = inputs
+	if err != nil {
+		rec.Status, rec.Error = "failed", err.Error()
+	}
+	return rec, err
+}
+
+// sightline is the chain itself: spectra → widths → columns → abundances.
+func (c *chain) sightline(s config.Sightline) (Result, error) {
+	res := Result{Scale: c.cfg.Scale, FSet: c.cfg.FSet, Frame: c.cfg.Frame}
+	lights, infos, err := c.lights(s)
+	if err != nil {
+		return res, err
+	}
+	res.Spectra = infos
+	if len(s.Spectra) > 0 {
+		tasks, err := c.tasks(s)
+		if err != nil {
+			return res, err
+		}
+		var missing []string
+		if res.Widths, missing, err = MeasureLines(lights, tasks, c.table); err != nil {
+			return res, at(c.cfg.File, s.Name, err)
+		}
+		res.Warnings = append(res.Warnings, missing...)
+	}
+	if err := c.columns(&res, s); err != nil {
+		return res, at(c.cfg.File, s.Name, err)
+	}
+	if s.Hydrogen != nil {
+		h, err := hydrogen(s)
+		if err != nil {
+			return res, at(c.cfg.File, s.Name, err)
+		}
+		res.Hydrogen = &h
+		res.Depletions, err = abundance.Deplete(res.Adopted, h, c.cfg.Scale)
+		if err != nil {
+			return res, at(c.cfg.File, s.Name, err)
+		}
+	}
+	res.Rows = c.rows(res)
+	return res, nil
+}
+
+// at puts the file and the sightline before an error, and keeps its kind.
+func at(file, name string, err error) error {
+	if oops.IsInput(err) {
+		return fmt.Errorf("%s: %s: %w", file, name, err)
+	}
+	return fmt.Errorf("%s: %w", name, err)
+}
+
+// tasks turns the lines of a sightline into what is to be measured.
+func (c *chain) tasks(s config.Sightline) ([]LineTask, error) {
+	var out []LineTask
+	for _, l := range s.Lines {
+		line, err := c.table.Find(l.Name)
+		if err != nil {
+			return nil, at(c.cfg.File, s.Name, err)
+		}
+		t := LineTask{
+			Line: line, Window: l.Window, AutoWindow: l.AutoWindow, Continuum: l.Continuum,
+			Degree: l.Degree, MaxDegree: s.MaxDegree, B: l.B, Detection: s.Detection,
+			LimitSigma: s.LimitSigma, LimitWidth: l.LimitWidth, Velocity: s.Velocity,
+			File: l.File, Order: l.Order, Optional: l.Inherited(),
+			Zero: func(file string) measure.Zero { return priorZero(s, file) },
+			ContErr: func(file string) float64 {
+				for _, sp := range s.Spectra {
+					if sp.File == file {
+						return sp.ContinuumErr
+					}
+				}
+				return 0
+			},
+		}
+		if t.Velocity == ([2]float64{}) {
+			t.Velocity = l.Window
+		}
+		out = append(out, t)
+	}
+	return out, nil
+}
+
+// priorZero is the zero level of a spectrum before any black core measures it.
+func priorZero(s config.Sightline, file string) measure.Zero {
+	z := s.ZeroLevel
+	by := "prior"
+	for _, sp := range s.Spectra {
+		if sp.File == file && sp.ZeroLevel != nil {
+			z, by = *sp.ZeroLevel, "user"
+		}
+	}
+	return measure.Zero{Level: z.Level, Err: z.Err, By: by}
+}
+
+// frameName is a frame in the words of people.
+func frameName(k frame.Kind) string {
+	switch k {
+	case frame.Heliocent:
+		return "heliocentric"
+	case frame.Barycentric:
+		return "barycentric"
+	case frame.Topocentric:
+		return "topocentric"
+	}
+	return string(k)
+}
