@@ -183,4 +183,3 @@ func runsOf(x, y []float64) (out []xy) {
 	}
 	return out
 }
-

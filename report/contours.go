@@ -89,4 +89,3 @@ func spread(xs []float64) axis {
 	a.Ticks = ticks(a.Lo, a.Hi, 6, 0)
 	return a
 }
-

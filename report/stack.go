@@ -150,4 +150,3 @@ func (s *stack) draw(c draw.Canvas) {
 		c.FillText(side, vg.Point{X: x + vg.Points(2), Y: (top + below) / 2}, words)
 	}
 }
-
