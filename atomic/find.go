@@ -15,6 +15,8 @@ type prefix struct {
 	name    string
 	element bool
 	lines   []int
+
+	squeezed, folded, lower string // of name
 }
 
 // index prepares Find. A species without a level stands for its ground level in
@@ -27,7 +29,7 @@ func (t *Table) index() {
 		if !ok {
 			i = len(t.look)
 			at[key] = i
-			t.look = append(t.look, prefix{name: name, element: element})
+			t.look = append(t.look, prefix{name: name, element: element, squeezed: squeeze(name), folded: fold(name), lower: strings.ToLower(name)})
 		}
 		t.look[i].lines = append(t.look[i].lines, line)
 	}
@@ -110,24 +112,28 @@ type reading struct {
 	rest   string
 	number float64 // NaN: a designation
 	digits int
-	exact  int // 2: the prefix stands there as written; 1: but for blanks; 0: but for case
+	exact  int // 3: the prefix stands there as a word; 2: but for blanks; 1: but for case; 0: but for both
+}
+
+// word reports whether s begins with p and a blank, or is p.
+func word(s, p string) bool {
+	return strings.HasPrefix(s, p) && (len(s) == len(p) || s[len(p)] == ' ')
 }
 
 func (t *Table) readings(q string) []reading {
 	var out []reading
 	sq, fq, lq := squeeze(q), fold(q), strings.ToLower(q)
 	for _, p := range t.look {
-		fp := fold(p.name)
-		if !strings.HasPrefix(fq, fp) {
+		if !strings.HasPrefix(fq, p.folded) {
 			continue
 		}
-		r := reading{p: p, rest: strings.TrimSuffix(fq[len(fp):], "angstrom"), number: math.NaN()}
+		r := reading{p: p, rest: strings.TrimSuffix(fq[len(p.folded):], "angstrom"), number: math.NaN()}
 		switch {
-		case strings.HasPrefix(q+" ", p.name+" "):
+		case word(q, p.name):
 			r.exact = 3
-		case strings.HasPrefix(sq, squeeze(p.name)):
+		case strings.HasPrefix(sq, p.squeezed):
 			r.exact = 2
-		case strings.HasPrefix(lq+" ", strings.ToLower(p.name)+" "):
+		case word(lq, p.lower):
 			r.exact = 1
 		}
 		if n := strings.TrimSuffix(r.rest, "a"); strings.Trim(n, "0123456789.") == "" {
@@ -152,7 +158,7 @@ func (t *Table) matches(read []reading) (hits []int, best *reading) {
 		h := t.in(*r)
 		switch {
 		case len(h) == 0 && len(hits) == 0:
-			if best == nil || len(r.p.name) > len(best.p.name) && (r.plain() || !best.plain()) || r.plain() && !best.plain() {
+			if r.plain() && (best == nil || len(r.p.name) > len(best.p.name)) {
 				best = r
 			}
 		case len(h) == 0:
@@ -170,10 +176,10 @@ func (t *Table) matches(read []reading) (hits []int, best *reading) {
 	return hits, best
 }
 
-// plain: the rest is a wavelength or a short designation, so that the prefix is
-// likely to be meant.
+// plain: a blank or a wavelength follows the prefix, so that it is likely to be
+// meant and its lines explain what went wrong.
 func (r reading) plain() bool {
-	return !r.p.element && (r.rest == "" || !math.IsNaN(r.number) || !strings.HasPrefix(r.rest, "i"))
+	return r.rest == "" || !math.IsNaN(r.number) && !r.p.element || r.exact == 3 || r.exact == 1
 }
 
 func (t *Table) in(r reading) []int {
