@@ -58,7 +58,7 @@ func fluxRange(w measure.Width, lo, hi float64) (float64, float64) {
 		sigma = sigmas[len(sigmas)/2]
 	}
 	sigma = math.Min(sigma, 0.3)
-	if deepest > 0.45 || w.Saturated != "" {
+	if deepest > 0.45 {
 		return math.Min(-0.12, -3*sigma), 1 + math.Max(0.15, 3.5*sigma)
 	}
 	return 1 - math.Max(1.25*deepest, 5*sigma), 1 + math.Max(0.35*deepest, 4.5*sigma)

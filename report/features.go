@@ -16,14 +16,18 @@ type mark struct {
 	name   string
 	v      float64    // km/s in the scale of the panel's line
 	reach  [2]float64 // km/s in which it may absorb
-	row    int        // 0 nearest the spectrum; −1: no room for the name
-	centre vg.Length  // of the name, from the panel's left edge
+	row    int        // 0 nearest the spectrum; −1: without a name
+	shared bool       // a neighbour of the same name bears it
+	tick   vg.Length  // from the panel's left edge
+	centre vg.Length  // of the name, likewise
+	half   vg.Length  // half the room that the name takes
 }
 
 const (
 	rowHeight  = 8.5 // points, a name of a blend
 	tickLength = 5.0
 	maxRows    = 3
+	nameGap    = 6.0 // between names
 )
 
 // placeMarks gives each blend that touches lo..hi (km/s about wave, Å) a place in
@@ -44,32 +48,51 @@ func placeMarks(features []measure.Feature, wave, lo, hi float64, wide vg.Length
 	}
 	sort.SliceStable(marks, func(i, j int) bool { return marks[i].v < marks[j].v })
 	sty := letters(textSize, purpleInk, text.XCenter, text.YBottom)
-	const gap = 6
+	for i := range marks {
+		marks[i].half = width(sty, marks[i].name)/2 + nameGap/2
+		marks[i].tick = vg.Length((marks[i].v-lo)/(hi-lo)) * wide
+		marks[i].row = -1
+	}
 	for i := range marks {
 		m := &marks[i]
-		half := width(sty, m.name)/2 + gap/2
-		tick := vg.Length((m.v-lo)/(hi-lo)) * wide
-		m.centre = min(max(tick, half), wide-half)
-		m.row = -1
-		for row := 0; row < maxRows && m.row < 0 && 2*half <= wide; row++ {
+		for _, o := range marks[:i] { // two lines of one name, side by side: one name does
+			m.shared = m.shared || o.name == m.name && o.row >= 0 && m.tick-o.tick < 12
+		}
+		if m.shared || 2*m.half > wide {
+			continue
+		}
+		// beside its tick where the next tick would run into a centred name
+		shifts := []vg.Length{0, -m.half + nameGap, m.half - nameGap}
+		if i+1 < len(marks) && marks[i+1].name != m.name && marks[i+1].tick-m.tick < m.half {
+			shifts[0], shifts[1] = shifts[1], shifts[0]
+		}
+		m.find(marks[:i], shifts, wide)
+		rows = max(rows, m.row+1)
+	}
+	return marks, rows
+}
+
+// find gives a mark the lowest row and the first shift of its name at which it is
+// clear of the others.
+func (m *mark) find(others []mark, shifts []vg.Length, wide vg.Length) {
+	for row := range maxRows {
+		for _, s := range shifts {
+			at := min(max(m.tick+s, m.half), wide-m.half)
 			free := true
-			for _, o := range marks[:i] {
-				oHalf := width(sty, o.name)/2 + gap/2
-				oTick := vg.Length((o.v-lo)/(hi-lo)) * wide
+			for _, o := range others {
 				switch {
-				case o.row == row && m.centre-half < o.centre+oHalf && o.centre-oHalf < m.centre+half,
-					o.row >= 0 && o.row < row && math.Abs(float64(tick-o.centre)) < float64(oHalf),
-					o.row > row && math.Abs(float64(oTick-m.centre)) < float64(half):
+				case o.row == row && at-m.half < o.centre+o.half && o.centre-o.half < at+m.half,
+					o.row >= 0 && o.row < row && m.tick > o.centre-o.half && m.tick < o.centre+o.half,
+					o.row > row && o.tick > at-m.half && o.tick < at+m.half:
 					free = false
 				}
 			}
 			if free {
-				m.row = row
+				m.row, m.centre = row, at
+				return
 			}
 		}
-		rows = max(rows, m.row+1)
 	}
-	return marks, rows
 }
 
 // drawMarks puts the ticks and names of blends above the spectrum.
@@ -84,7 +107,8 @@ func (p panel) drawMarks(marks []mark, rows int) {
 		foot := base - vg.Points(tickLength-1.5*float64(min(max(m.row, 0), 2)))
 		head := base + vg.Points(rowHeight*float64(max(m.row, 0)))
 		p.StrokeLine2(line, p.px(m.v), foot, p.px(m.v), head)
-		if m.reach[1] > m.reach[0] {
+		// how far it reaches, unless that is most of the panel
+		if r := m.reach[1] - m.reach[0]; r > 0 && r < 0.6*(p.X.Hi-p.X.Lo) {
 			p.StrokeLine2(stroke(purpleInk, hair), p.px(m.reach[0]), foot, p.px(m.reach[1]), foot)
 		}
 		if m.row >= 0 {

@@ -130,7 +130,7 @@ func stackCaption(r survey.Record, ws []measure.Width, s *stack) string {
 	b.WriteString(".")
 	for _, bl := range s.blocks {
 		for _, m := range bl.marks {
-			if m.row < 0 {
+			if m.row < 0 && !m.shared {
 				fmt.Fprintf(&b, " Tick without a name in %s at %s km/s: %s.", bl.name, number(m.v, 1), m.name)
 			}
 		}

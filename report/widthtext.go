@@ -49,6 +49,7 @@ func WidthText(w io.Writer, m measure.Width, kind frame.Kind, o Options) error {
 	say("S/N", snText(m), normal)
 	say("noise", noiseText(m), normal)
 	say("continuum", fmt.Sprintf("%s, degree %d%s", m.ContinuumBy, m.Degree, windowsPhrase(m.Windows)), normal)
+	say("", placementsText(m), normal)
 	say("zero level", zeroText(m.Zero), normal)
 	if m.FillPart != 0 {
 		say("filled", fmt.Sprintf("%s %% of W lies in masked pixels", number(100*m.FillPart, 1)), warn)
@@ -65,7 +66,7 @@ func WidthText(w io.Writer, m measure.Width, kind frame.Kind, o Options) error {
 	p.errorSplit(m)
 
 	cols := &grid{indent: 2, align: "lnf", head: []string{"column", "log N", ""}}
-	cols.add(plainCell("weak line"), logCell(budget.Log10(m.Linear)), plainCell(why(m.Linear)))
+	cols.add(plainCell("weak line"), logCell(budget.Log10(m.Linear)), plainCell(why(m)))
 	if n := budget.Log10(m.AOD); n.Kind() != "none" && m.Detected {
 		more := []string{}
 		if m.AODV.Kind() != "none" {
@@ -87,16 +88,38 @@ func WidthText(w io.Writer, m measure.Width, kind frame.Kind, o Options) error {
 	return p.writeTo(w)
 }
 
-func why(n budget.Number) string {
-	switch n.Kind() {
+// why says how the column of the weak-line relation is to be read.
+func why(m measure.Width) string {
+	var parts []string
+	switch m.Linear.Kind() {
 	case "lower":
-		return "lower limit: the line is saturated"
+		parts = append(parts, "lower limit: the line is saturated")
 	case "upper":
-		return "upper limit"
+		parts = append(parts, "upper limit")
 	case "marginal":
-		return "marginal"
+		parts = append(parts, "marginal")
 	}
-	return ""
+	if m.Correction > 0 && finite(m.Correction) {
+		parts = append(parts, signed(m.Correction, 3)+" dex for its optical depth")
+	}
+	if m.Tau0 > 0 && finite(m.Tau0) {
+		parts = append(parts, "τ₀ "+number(m.Tau0, 2)+" with b = "+number(m.B, 1)+" km/s")
+	}
+	return strings.Join(parts, ", ")
+}
+
+// placementsText is W with the other continua.
+func placementsText(m measure.Width) string {
+	var parts []string
+	for _, q := range m.Placements {
+		if finite(q.W) {
+			parts = append(parts, q.What+": "+number(q.W*mA, widthDecimals(q.W*mA)))
+		}
+	}
+	if len(parts) == 0 {
+		return ""
+	}
+	return "W with other placements (mÅ): " + strings.Join(parts, ", ")
 }
 
 func significance(m measure.Width) string {
