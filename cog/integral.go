@@ -69,6 +69,7 @@ func parts(l *atomic.Line) []atomic.Part {
 //     A = Σ τ₀ s a b²/√π makes x the same for every line.
 func (p *profile) integrate() sum {
 	lo, hi := math.Inf(1), math.Inf(-1)
+	first, last := lo, hi            // component centres
 	var area, mean, strength float64 // A, A v̄, Σ τ₀ s b
 	for i := range p.blobs {
 		c := &p.blobs[i]
@@ -76,6 +77,7 @@ func (p *profile) integrate() sum {
 		for _, q := range p.parts {
 			v := c.v + q.DV
 			lo, hi = math.Min(lo, v-reach), math.Max(hi, v+reach)
+			first, last = math.Min(first, v), math.Max(last, v)
 			s := q.Strength * c.tau0
 			area += s * c.a * c.b * c.b / math.SqrtPi
 			mean += s * c.a * c.b * c.b / math.SqrtPi * v
@@ -90,6 +92,10 @@ func (p *profile) integrate() sum {
 	symmetric := len(p.blobs) == 1 && len(p.parts) == 1
 	if area > 0 {
 		mean /= area
+		if !symmetric { // seen from the wings, all components lie close together
+			spread := math.Max(last-mean, mean-first)
+			lo, hi = math.Min(lo, mean-3*spread), math.Max(hi, mean+3*spread)
+		}
 		root := math.Sqrt(area)
 		right := p.wing(root, mean, 1, hi)
 		out.add(right, 1)
@@ -216,7 +222,21 @@ func (p *profile) wing(root, mean, side, from float64) sum {
 		out.w = root/wingEnd - side*(from-mean)
 		x = wingEnd
 	}
-	s, _ := p.rule(region{half: x / 2, mid: x / 2, root: root, mean: mean, side: side}, 1)
-	out.add(s, 1)
+	p.wingPanel(&out, region{half: x / 2, mid: x / 2, root: root, mean: mean, side: side}, 8)
 	return out
+}
+
+// wingPanel adds a range of x, halved up to depth times where 128 points are not
+// enough.
+func (p *profile) wingPanel(out *sum, r region, depth int) {
+	s, ok := p.rule(r, 1)
+	if ok || depth == 0 {
+		out.add(s, 1)
+		return
+	}
+	near, far := r, r
+	near.half, far.half = r.half/2, r.half/2
+	near.mid, far.mid = r.mid+r.half/2, r.mid-r.half/2
+	p.wingPanel(out, near, depth-1)
+	p.wingPanel(out, far, depth-1)
 }

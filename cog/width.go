@@ -90,7 +90,7 @@ func computable(l *atomic.Line, blobs []blob) bool {
 
 func zeroOrNaN(l *atomic.Line, blobs []blob) float64 {
 	for _, c := range blobs {
-		if !(c.b > 0 && c.tau0 == 0 && c.a >= 0) {
+		if !(c.b > 0 && c.tau0 == 0 && c.a >= 0) || math.IsInf(c.b, 0) {
 			return math.NaN()
 		}
 	}
