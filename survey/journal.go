@@ -224,15 +224,25 @@ func (j *Journal) Each(f func(Record) error) error {
 	return nil
 }
 
-// Close syncs the journal and lets go of the folder.
+// Close syncs the journal and lets go of the folder. Closing it again does
+// nothing and returns nil.
 func (j *Journal) Close() error {
 	j.mu.Lock()
 	defer j.mu.Unlock()
+	if j.lock == nil {
+		return nil
+	}
+	lk := j.lock
+	j.lock = nil
 	if j.timer != nil {
 		j.timer.Stop()
 	}
 	j.sync()
-	return firstOf(j.err, j.f.Close(), unlock(j.lock))
+	err := firstOf(j.err, j.f.Close(), unlock(lk))
+	if j.err == nil {
+		j.err = fmt.Errorf("%s is closed", j.path)
+	}
+	return err
 }
 
 // onDisk is a Record in the order of a journal line: what an index needs first.

@@ -279,7 +279,17 @@ func TestJournalLock(t *testing.T) {
 	if err := j.Close(); err != nil {
 		t.Fatal(err)
 	}
-	open(t, dir).Close()
+	k := open(t, dir)
+	if err := j.Close(); err != nil { // must not touch the other's lock
+		t.Error(err)
+	}
+	if _, err := OpenJournal(dir); err == nil {
+		t.Error("closing twice broke the next lock")
+	}
+	if err := j.Append(star("Lantern 1", 0, "a", "x")); err == nil {
+		t.Error("a closed journal takes records")
+	}
+	k.Close()
 	if err := os.WriteFile(filepath.Join(dir, LockName), []byte("host elsewhere process 1 since 2026-01-01T00:00:00Z\n"), 0o644); err != nil {
 		t.Fatal(err)
 	}
