@@ -62,11 +62,6 @@ func (w *work) profile(cover []float64) {
 	na := w.out.Profile.Na
 	p := Profile{}
 	m := w.p.Continuum
-	alts := make([][]float64, len(m.Alt))
-	for k := range m.Alt {
-		alts[k] = make([]float64, w.n)
-		m.AltAt(k, alts[k], w.p.Wave)
-	}
 	basis := make([]float64, len(m.Coef))
 	for i := a; i <= b; i++ {
 		c := w.cont[i]
@@ -85,7 +80,7 @@ func (w *work) profile(cover []float64) {
 				v += basis[k] * basis[l] * m.Cov[k*len(basis)+l]
 			}
 		}
-		for _, alt := range alts {
+		for _, alt := range w.alt {
 			lo, hi = min(lo, alt[i]), max(hi, alt[i])
 		}
 		p.Placement = append(p.Placement, digits(finite(math.Hypot(math.Sqrt(max(v, 0)), (hi-lo)/2)/c)))

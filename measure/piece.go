@@ -12,11 +12,12 @@ import (
 type work struct {
 	p     Piece
 	n     int
-	edge  []float64 // n+1, Å: half-way between pixels
-	v     []float64 // km/s of the pixel centre
-	cont  []float64 // continuum
-	f     []float64 // flux over continuum, zero level taken off, filled where bad
-	sigma []float64 // of f, one pixel
+	edge  []float64   // n+1, Å: half-way between pixels
+	v     []float64   // km/s of the pixel centre
+	cont  []float64   // continuum
+	alt   [][]float64 // its other placements
+	f     []float64   // flux over continuum, zero level taken off, filled where bad
+	sigma []float64   // of f, one pixel
 	bad   []bool
 	fill  []fill // where bad and inside the window
 	grow  float64
@@ -52,6 +53,11 @@ func newWork(p Piece) (*work, error) {
 	}
 	w.cont = make([]float64, n)
 	p.Continuum.At(w.cont, p.Wave)
+	for k := range p.Continuum.Alt {
+		c := make([]float64, n)
+		p.Continuum.AltAt(k, c, p.Wave)
+		w.alt = append(w.alt, c)
+	}
 	w.grow = 1 + p.Zero.Level
 	w.f, w.sigma, w.bad = make([]float64, n), make([]float64, n), make([]bool, n)
 	for i := range w.f {

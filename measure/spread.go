@@ -43,9 +43,7 @@ func (w *work) placement(cover []float64, quantity func(cont []float64) float64,
 	value := make([]float64, len(conts))
 	value[0] = quantity(w.cont)
 	for k := range m.Alt {
-		c := make([]float64, w.n)
-		m.AltAt(k, c, w.p.Wave)
-		bad := false
+		c, bad := w.alt[k], false
 		for i, d := range cover {
 			bad = bad || d > 0 && !(c[i] > 0)
 		}

@@ -18,7 +18,7 @@ const Lags = 5
 // A fitted polynomial takes p slowly varying modes out of the noise, each of the
 // variance Ratio² T, T = 1 + 2Σρ, so every covariance c_k = ⟨rᵢrᵢ₊ₖ⟩ comes out low
 // by about pT/n, which is put back. Correlations are shrunk by the factor
-// 1 − 1/(n ρ²), which leaves 0 where a value is within its own error of 0:
+// ρ²/(ρ² + 1/n), which leaves little of a value that is within its own error of 0:
 // otherwise five noisy lags would make each error wrong by several per cent.
 func measure(r []float64, use []bool, p int, cut [2]float64) Noise {
 	n, s0 := 0, 0.0
