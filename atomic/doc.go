@@ -7,7 +7,8 @@
 // 5889.95"), in vacuum below, as spectra from space are ("Zn II 2026.14"). Line
 // has both wavelengths. An excited fine-structure level is marked by stars ("C I*
 // 1656.27"); a molecule's level stands in Level, and Carrier names the population
-// that a line counts ("CN N=1", "CH e").
+// that a line counts ("CN N=1", "CH e"). The common isotope carries no number: "Li
+// I" is ⁷Li beside "6Li I", "CN" beside "13CN".
 //
 // The f-values of CH B-X and C-X and of OH are per Λ-doublet level: N(CH) = N(CH
 // e) + N(CH f). CH 4300.31 blends both levels and gives the total. CN rows from

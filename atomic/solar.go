@@ -54,7 +54,7 @@ var solar = sync.OnceValue(func() map[string][]SolarRow {
 	return out
 })
 
-// SolarScales returns the scales, oldest source last within a family as listed.
+// SolarScales returns the scales in the order of scales.csv.
 func SolarScales() []Scale { return append([]Scale(nil), scales()...) }
 
 // SolarRows returns every row of an element on a scale (photosphere and CI

@@ -94,10 +94,10 @@ func readStructure(r record, l *Line) ([]Part, error) {
 
 // Within returns the members of the line with neighbours merged that lie within
 // dv (km/s) of the first of them, at their centre of gravity: fewer profiles for
-// the same shape when dv is well below the Doppler parameter b. Merging a group
-// of variance s² widens a line by less than s²/b of b; the hyperfine doublets of
-// the alkalis collapse to their two lower levels at dv = 0.15, good for b > 0.3.
-// Without members it returns one of strength 1.
+// the same shape when dv is well below the Doppler parameter b. Merging members of
+// velocity variance s² narrows their profile by s²/b² of its b; the hyperfine
+// lines of sodium collapse to their two lower levels at dv = 0.15 (s ≤ 0.04 km/s,
+// so 1 % of b at b = 0.4). Without members it returns one of strength 1.
 func (l Line) Within(dv float64) []Part {
 	if len(l.Parts) == 0 {
 		return []Part{{Strength: 1, Status: l.WaveStatus, Source: l.WaveSource}}

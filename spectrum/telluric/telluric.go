@@ -46,13 +46,14 @@ type Line struct {
 
 // A Range is a stretch of spectrum where the air absorbs.
 type Range struct {
-	Molecule       string
-	Lo, Hi         float64 // vacuum Å
-	LoAir, HiAir   float64 // Å
-	Strength       Strength
-	Broad          bool // structure wider than lines, or lines not resolved
-	Source, Status string
-	Note           string
+	Molecule     string
+	Lo, Hi       float64 // vacuum Å
+	LoAir, HiAir float64 // Å
+	Strength     Strength
+	Broad        bool   // structure wider than lines, or lines not resolved
+	Source       string // key of Cite
+	Status       atomic.Status
+	Note         string
 }
 
 //go:embed *.csv
@@ -147,8 +148,8 @@ var ranges = sync.OnceValue(func() []Range {
 	var out []Range
 	for _, m := range rows("ranges.csv") {
 		r := Range{Molecule: m["molecule"], LoAir: number("ranges.csv", m, "from_air_A"), HiAir: number("ranges.csv", m, "to_air_A"),
-			Strength: Strength(m["strength"]), Broad: m["form"] == "broad", Source: m["src"], Status: m["status"], Note: m["note"]}
-		held("ranges.csv: "+m["from_air_A"], r.Source, r.Strength, atomic.Status(r.Status))
+			Strength: Strength(m["strength"]), Broad: m["form"] == "broad", Source: m["src"], Status: atomic.Status(m["status"]), Note: m["note"]}
+		held("ranges.csv: "+m["from_air_A"], r.Source, r.Strength, r.Status)
 		r.Lo, r.Hi = frame.ToVacuum(r.LoAir, frame.Ciddor1996), frame.ToVacuum(r.HiAir, frame.Ciddor1996)
 		out = append(out, r)
 	}
