@@ -157,6 +157,10 @@ func (s *stack) drawNa(p panel, b block, lowest bool) {
 	if b.w.Window[1] > b.w.Window[0] {
 		p.column(paleBlue, b.w.Window[0], b.w.Window[1])
 	}
+	if !(top > 0) && !(low < 0) { // nothing was measured here
+		p.frame(lowest, false)
+		return
+	}
 	x, y := outline(pr.V, pr.Na, inside)
 	for _, sp := range runsOf(x, y) {
 		fx := append(append([]float64{sp.x[0]}, sp.x...), sp.x[len(sp.x)-1])

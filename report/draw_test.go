@@ -118,6 +118,11 @@ func TestPlaceMarks(t *testing.T) {
 		fs = append(fs, measure.Feature{Name: fmt.Sprintf("Fe I 500%d.12", i), Wave: wave * (1 + (float64(i)*11-48)/atomic.C), Range: [2]float64{-2, 2}})
 	}
 	fs = append(fs, measure.Feature{Name: "outside", Wave: wave * (1 + 90/atomic.C), Range: [2]float64{-2, 2}})
+	far := measure.Feature{Name: "wide", Wave: wave * (1 + 400/atomic.C), Range: [2]float64{-450, 450}}
+	marks, _ := placeMarks(append(fs, far), wave, lo, hi, wide)
+	if last := marks[len(marks)-1]; last.name != "wide →" || !last.outside || last.v != hi {
+		t.Errorf("a feature that reaches in from outside: %+v", last)
+	}
 	marks, rows := placeMarks(fs, wave, lo, hi, wide)
 	if len(marks) != 9 || rows < 2 || rows > maxRows {
 		t.Fatalf("%d marks in %d rows", len(marks), rows)

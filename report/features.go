@@ -13,14 +13,15 @@ import (
 
 // A mark is one blend of a panel: its tick, its name, and the row of the name.
 type mark struct {
-	name   string
-	v      float64    // km/s in the scale of the panel's line
-	reach  [2]float64 // km/s in which it may absorb
-	row    int        // 0 nearest the spectrum; −1: without a name
-	shared bool       // a neighbour of the same name bears it
-	tick   vg.Length  // from the panel's left edge
-	centre vg.Length  // of the name, likewise
-	half   vg.Length  // half the room that the name takes
+	name    string
+	v       float64    // km/s in the scale of the panel's line
+	reach   [2]float64 // km/s in which it may absorb
+	row     int        // 0 nearest the spectrum; −1: without a name
+	shared  bool       // a neighbour of the same name bears it
+	outside bool       // its centre is beyond the panel; v is the nearer edge
+	tick    vg.Length  // from the panel's left edge
+	centre  vg.Length  // of the name, likewise
+	half    vg.Length  // half the room that the name takes
 }
 
 const (
@@ -41,8 +42,11 @@ func placeMarks(features []measure.Feature, wave, lo, hi float64, wide vg.Length
 			continue
 		}
 		m.reach[0], m.reach[1] = math.Max(m.reach[0], lo), math.Min(m.reach[1], hi)
-		if m.v < lo || m.v > hi { // its wing comes in from outside
-			m.v = (m.reach[0] + m.reach[1]) / 2
+		switch { // it comes in from outside
+		case m.v < lo:
+			m.v, m.name, m.outside = lo, "← "+m.name, true
+		case m.v > hi:
+			m.v, m.name, m.outside = hi, m.name+" →", true
 		}
 		marks = append(marks, m)
 	}
@@ -82,8 +86,8 @@ func (m *mark) find(others []mark, shifts []vg.Length, wide vg.Length) {
 			for _, o := range others {
 				switch {
 				case o.row == row && at-m.half < o.centre+o.half && o.centre-o.half < at+m.half,
-					o.row >= 0 && o.row < row && m.tick > o.centre-o.half && m.tick < o.centre+o.half,
-					o.row > row && o.tick > at-m.half && o.tick < at+m.half:
+					o.row >= 0 && o.row < row && !m.outside && m.tick > o.centre-o.half && m.tick < o.centre+o.half,
+					o.row > row && !o.outside && o.tick > at-m.half && o.tick < at+m.half:
 					free = false
 				}
 			}
@@ -106,7 +110,9 @@ func (p panel) drawMarks(marks []mark, rows int) {
 	for _, m := range marks {
 		foot := base - vg.Points(tickLength-1.5*float64(min(max(m.row, 0), 2)))
 		head := base + vg.Points(rowHeight*float64(max(m.row, 0)))
-		p.StrokeLine2(line, p.px(m.v), foot, p.px(m.v), head)
+		if !m.outside {
+			p.StrokeLine2(line, p.px(m.v), foot, p.px(m.v), head)
+		}
 		// how far it reaches, unless that is most of the panel
 		if r := m.reach[1] - m.reach[0]; r > 0 && r < 0.6*(p.X.Hi-p.X.Lo) {
 			p.StrokeLine2(stroke(purpleInk, hair), p.px(m.reach[0]), foot, p.px(m.reach[1]), foot)

@@ -17,6 +17,7 @@ type grid struct {
 const (
 	gridGap      = 2
 	leastRemarks = 26 // columns below which remarks go under their row
+	mostLines    = 3  // of a remark, above which they go there too
 )
 
 func (g *grid) add(cells ...cell) { g.rows = append(g.rows, cells) }
@@ -76,12 +77,22 @@ func lay(g *grid, room int) (layout, bool) {
 	if l.flex < 0 {
 		return l, false
 	}
-	if least := min(l.wide[l.flex], leastRemarks); total-l.wide[l.flex]+least <= room {
-		l.wide[l.flex] -= total - room
+	natural := l.wide[l.flex]
+	if left := natural - (total - room); left >= min(natural, leastRemarks) && tallest(g, l.flex, left) <= mostLines {
+		l.wide[l.flex] = left
 		return l, true
 	}
 	l.below = true
-	return l, total-l.wide[l.flex]-gridGap <= room
+	return l, total-natural-gridGap <= room
+}
+
+// tallest is the number of lines that the longest cell of a column wraps to.
+func tallest(g *grid, c, wide int) int {
+	most := 0
+	for _, r := range g.rows {
+		most = max(most, len(wrap(r[c].text, wide)))
+	}
+	return most
 }
 
 // grid writes a table no wider than the page.

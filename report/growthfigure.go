@@ -73,7 +73,7 @@ func growthPoints(g cog.Result) []growthPoint {
 		if !(wave > 0) || !(f > 0) || l.Column >= len(g.LogN) {
 			continue
 		}
-		p := growthPoint{name: shortName(l.Line, g.Species), column: l.Column, limit: l.Limit,
+		p := growthPoint{name: plain(withoutSpecies(l.Line, value(g.Levels, l.Column))), column: l.Column, limit: l.Limit,
 			x: g.LogN[l.Column].X + math.Log10(f*wave), y: math.Log10(l.W / wave), residual: (l.W - l.Model) / l.Err}
 		s := l.Err / l.W
 		switch {
@@ -88,11 +88,6 @@ func growthPoints(g cog.Result) []growthPoint {
 		}
 	}
 	return out
-}
-
-// shortName is what tells a line from its sisters: its wavelength.
-func shortName(line, species string) string {
-	return plain(strings.TrimSpace(strings.TrimPrefix(line, species)))
 }
 
 func growthAxis(ps []growthPoint) axis {
@@ -160,19 +155,23 @@ func drawGrowth(c draw.Canvas, area vg.Rectangle, x axis, g cog.Result, ps []gro
 	// the weak-line relation: W/λ = π rₑ N f λ
 	slope := math.Log10(math.Pi * atomic.ElectronRadius * 1e-8)
 	p.curve(stroke(midGrey, fine, 1, 1.5), []float64{x.Lo, x.Hi}, []float64{x.Lo + slope, x.Hi + slope})
+	place := &placer{area: vg.Rectangle{Min: vg.Point{X: area.Min.X + 3, Y: area.Min.Y + 3}, Max: vg.Point{X: area.Max.X - 3, Y: area.Max.Y - 3}}}
+	avoid := func(ys []float64) { // labels keep off the curves
+		for i := range xs {
+			if finite(ys[i]) {
+				place.block(p.at(xs[i], ys[i]), 1)
+			}
+		}
+	}
 	for _, b := range []float64{g.B.X - g.B.ErrLo(), g.B.X + g.B.ErrUp()} {
 		if b > 0 && finite(b) && g.B.Kind() == "value" {
-			bx, by := theory(line, b, x)
-			p.curve(stroke(blue, fine, 3, 1.5), bx, by)
+			_, ys := theory(line, b, x)
+			p.curve(stroke(blue, fine, 3, 1.5), xs, ys)
+			avoid(ys)
 		}
 	}
 	p.curve(stroke(blue, bold), xs, best)
-	place := &placer{area: vg.Rectangle{Min: vg.Point{X: area.Min.X + 3, Y: area.Min.Y + 3}, Max: vg.Point{X: area.Max.X - 3, Y: area.Max.Y - 3}}}
-	for i := 0; i < len(xs); i += 2 { // labels keep off the curve
-		if finite(best[i]) {
-			place.block(p.at(xs[i], best[i]), 1)
-		}
-	}
+	avoid(best)
 	p.growthKey(g, place)
 	for _, q := range ps {
 		place.block(p.at(q.x, q.y), 3)
@@ -266,7 +265,9 @@ func drawResiduals(c draw.Canvas, area vg.Rectangle, x axis, ps []growthPoint) {
 		}
 	}
 	top = math.Ceil(top) + 0.3
-	p.Y = axis{Lo: -top, Hi: top, Ticks: ticks(-top, top, 4, 0.05)}
+	step, m, exp := niceBelow(0.9 * top)
+	label := number(float64(m)*math.Pow(10, float64(exp)), max(0, -exp))
+	p.Y = axis{Lo: -top, Hi: top, Ticks: []tick{{-step, "−" + label}, {0, "0"}, {step, label}}}
 	p.horizontal(stroke(midGrey, hair, 1, 1.5), 1)
 	p.horizontal(stroke(midGrey, hair, 1, 1.5), -1)
 	p.horizontal(stroke(midGrey, fine), 0)

@@ -24,7 +24,8 @@ func hard() []survey.Record {
 		crowded.Blends = append(crowded.Blends, measure.Feature{Kind: "stellar", Name: fmt.Sprintf("Fe I 393%d.%d", i%10, i), Wave: crowded.Wave * (1 + (float64(i)*3-20)/299792.458), Range: [2]float64{-3, 3}})
 	}
 	crowded.Blends = append(crowded.Blends, measure.Feature{Kind: "band", Name: "a diffuse band with a name that is much longer than the panel is wide, by far and away, so that it cannot stand there at all", Wave: crowded.Wave, Range: [2]float64{-900, 900}},
-		measure.Feature{Kind: "telluric", Name: "far off", Wave: 2 * crowded.Wave}, measure.Feature{Name: "nowhere", Wave: math.NaN()})
+		measure.Feature{Kind: "telluric", Name: "far off", Wave: 2 * crowded.Wave}, measure.Feature{Name: "nowhere", Wave: math.NaN()},
+		measure.Feature{Kind: "stellar", Name: "H I Hε", Wave: crowded.Wave * 1.0004, Range: [2]float64{-450, 450}}, measure.Feature{Kind: "stellar", Name: "He I", Wave: crowded.Wave * 0.999, Range: [2]float64{-450, 450}})
 	allBad := measured(kI)
 	for i := range allBad.Profile.Bad {
 		allBad.Profile.Bad[i], allBad.Profile.Used[i] = true, false

@@ -131,6 +131,10 @@ func stackCaption(r survey.Record, ws []measure.Width, s *stack) string {
 	for _, bl := range s.blocks {
 		for _, m := range bl.marks {
 			if m.row < 0 && !m.shared {
+				if m.outside {
+					fmt.Fprintf(&b, " Also reaching into %s: %s.", bl.name, strings.Trim(m.name, "← →"))
+					continue
+				}
 				fmt.Fprintf(&b, " Tick without a name in %s at %s km/s: %s.", bl.name, number(m.v, 1), m.name)
 			}
 		}

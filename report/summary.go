@@ -178,7 +178,7 @@ func remarks(w measure.Width) string {
 		parts = append(parts, "saturated")
 	}
 	if len(w.Blends) > 0 {
-		parts = append(parts, "blend: "+blendsText(w.Blends))
+		parts = append(parts, "blend: "+strings.Join(blendNames(w.Blends), ", "))
 	} else if f&budget.Blended != 0 {
 		parts = append(parts, "blended")
 	}
@@ -212,7 +212,7 @@ func (p *page) adopted(cols []abundance.Column) {
 	for _, c := range cols {
 		how := c.Method
 		if c.Line != "" {
-			how += " (" + strings.TrimPrefix(c.Line, c.Species+" ") + ")"
+			how += " (" + withoutSpecies(c.Line, c.Species) + ")"
 		}
 		why := c.Rule
 		if words := (c.LogN.Flag &^ (budget.Upper | budget.Lower | budget.Interval)).Words(); len(words) > 0 {
@@ -221,4 +221,17 @@ func (p *page) adopted(cols []abundance.Column) {
 		g.add(plainCell(c.Species), logCell(c.LogN), plainCell(how), plainCell(strings.TrimSpace(why)))
 	}
 	p.grid(g)
+}
+
+// withoutSpecies is a line's name without the species that stands beside it, nor
+// the species' level ("CN N=0", "CN 3874.61").
+func withoutSpecies(line, species string) string {
+	if s, ok := strings.CutPrefix(line, species+" "); ok {
+		return s
+	}
+	word, _, _ := strings.Cut(species, " ")
+	if s, ok := strings.CutPrefix(line, word+" "); ok && strings.Contains(species, "=") {
+		return s
+	}
+	return line
 }

@@ -15,6 +15,7 @@ type printed struct {
 	x      string // value or limit; the lower end of an interval
 	up, lo string // errors; up is the upper end of an interval; equal: symmetric; "": open or none
 	bare   bool   // a value without any error
+	loose  bool   // errors so large that the value is none
 }
 
 // printNumber prints k·n. decimals is for what has no error to round by: limits,
@@ -38,6 +39,7 @@ func printNumber(n budget.Number, k float64, decimals int) printed {
 			break
 		}
 		p.x, p.up, p.lo = table.RoundAsym(n.X*k, up, lo)
+		p.loose = finite(up, lo) && math.Min(up, lo) > 1e3*math.Max(math.Abs(n.X*k), 1)
 	}
 	return p
 }
@@ -48,6 +50,8 @@ func (p printed) text() string {
 	switch {
 	case p.kind == "none" || p.x == "":
 		return "–"
+	case p.loose:
+		return "not constrained"
 	case p.kind == "upper":
 		s = "< " + p.x
 	case p.kind == "lower":
@@ -70,6 +74,8 @@ func (p printed) marked() string {
 	switch {
 	case p.kind == "none" || p.x == "":
 		return "not known"
+	case p.loose:
+		return p.text()
 	case p.kind == "upper" || p.kind == "lower":
 		return p.text()
 	case p.kind == "interval":

@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"lacuna/budget"
@@ -175,16 +176,22 @@ func windowsText(ws [][2]float64) string {
 	return strings.Join(parts, " ")
 }
 
-func blendsText(fs []measure.Feature) string {
-	var parts []string
+func blendsText(fs []measure.Feature) string { return strings.Join(blendNames(fs), "; ") }
+
+// blendNames names what else absorbs, with its kind where the name does not say
+// it, and each name once.
+func blendNames(fs []measure.Feature) []string {
+	var out []string
 	for _, f := range fs {
 		s := f.Name
 		if f.Kind != "" && f.Kind != "transition" && !strings.Contains(f.Name, f.Kind) {
 			s += " (" + f.Kind + ")"
 		}
-		parts = append(parts, s)
+		if !slices.Contains(out, s) {
+			out = append(out, s)
+		}
 	}
-	return strings.Join(parts, "; ")
+	return out
 }
 
 func under(s string) string {
