@@ -48,3 +48,39 @@ func BenchmarkWidthGrad(b *testing.B) {
 		})
 	}
 }
+
+// BenchmarkFit is one sightline of a batch: a resolved pair, a pair with hyperfine
+// structure, six Fe II lines; the last without contours.
+func BenchmarkFit(b *testing.B) {
+	table := atomic.Default()
+	named := func(logN, bKms float64, names ...string) []cog.Point {
+		var lines []atomic.Line
+		for _, s := range names {
+			l, err := table.Find(s)
+			if err != nil {
+				b.Fatal(err)
+			}
+			lines = append(lines, l)
+		}
+		return widths(lines, logN, bKms, 0.02)
+	}
+	iron := named(14.2, 4, "Fe II 2600.17", "Fe II 2586.65", "Fe II 2382.76", "Fe II 2374.46", "Fe II 2344.21", "Fe II 2260.78")
+	for _, c := range []struct {
+		name string
+		pts  []cog.Point
+		o    cog.Options
+	}{
+		{"Ca II pair", named(12, 2.5, "Ca II 3933.66", "Ca II 3968.47"), cog.Options{}},
+		{"Na I pair, structure", named(12, 1.5, "Na I 5889.95", "Na I 5895.92"), cog.Options{}},
+		{"Fe II six lines", iron, cog.Options{}},
+		{"Fe II six lines, no contours", iron, cog.Options{NoContours: true}},
+	} {
+		b.Run(c.name, func(b *testing.B) {
+			b.ReportAllocs()
+			for b.Loop() {
+				mustFit(b, c.pts, c.o)
+			}
+			b.ReportMetric(float64(b.Elapsed().Milliseconds())/float64(b.N), "ms/fit")
+		})
+	}
+}
