@@ -50,13 +50,15 @@ func (s *Segment) ToFrame(to frame.Kind) error {
 		s.note("%s wavelengths taken for %s: the Sun moves by 16 m/s at most", s.Frame, to)
 		s.Frame = to
 		return nil
+	case observer(s.Frame) && s.exact(to):
+		return s.apply(to)
 	case to == frame.LSRK:
 		return s.toLSRK()
-	case s.Frame == frame.LSRK:
+	case s.Frame == frame.LSRK && !(observer(to) && s.find(frame.LSRK, true) >= 0):
 		return s.fromLSRK(to)
 	case observer(s.Frame) && solar(to):
 		return s.apply(to)
-	case solar(s.Frame) && observer(to):
+	case observer(to) && s.Frame != frame.Source:
 		return s.undo(to)
 	}
 	return s.fail(fmt.Sprintf("there is no way from frame %s to %s", s.Frame, to), "give the spectrum in one of the solar frames")
@@ -69,13 +71,19 @@ func (s *Segment) Motion() (float64, bool) {
 	if observer(s.Frame) {
 		return 0, true
 	}
-	if !solar(s.Frame) {
-		return 0, false
-	}
-	if k := s.find(s.Frame, true); k >= 0 {
+	if k := s.find(s.Frame, true); k >= 0 && s.Frame != frame.Source {
 		return s.Shift[k].V, true
 	}
+	if k := s.find(frame.Barycentric, true); k >= 0 && s.Frame == frame.LSRK && s.Coord != nil {
+		return frame.AddVelocity(s.Shift[k].V, frame.LSRKTerm(s.Coord.RA, s.Coord.Dec)), true
+	}
 	return 0, false
+}
+
+// exact reports whether a correction leads straight to a frame and is not done.
+func (s *Segment) exact(to frame.Kind) bool {
+	k := s.find(to, false)
+	return k >= 0 && s.Shift[k].To == to
 }
 
 func solar(k frame.Kind) bool    { return k == frame.Heliocent || k == frame.Barycentric }
@@ -103,7 +111,7 @@ func (s *Segment) find(to frame.Kind, done bool) int {
 	return other
 }
 
-// apply goes from the observer to a solar frame.
+// apply goes from the observer to the frame of a correction.
 func (s *Segment) apply(to frame.Kind) error {
 	k := s.find(to, false)
 	if k < 0 {
@@ -117,6 +125,7 @@ func (s *Segment) apply(to frame.Kind) error {
 		s.Wave[i] *= 1 + a.V/frame.C
 	}
 	s.settle(true)
+	s.Shift[k].Done = true
 	s.FrameBy = fmt.Sprintf("%s (%s), then %+.3f km/s of %s applied", s.Frame, s.FrameBy, a.V, a.Keyword)
 	s.Frame = to
 	return nil
@@ -133,6 +142,7 @@ func (s *Segment) undo(to frame.Kind) error {
 		s.Wave[i] /= 1 + a.V/frame.C
 	}
 	s.settle(false)
+	s.Shift[k].Done = false
 	s.FrameBy = fmt.Sprintf("%s (%s), then %+.3f km/s of %s undone", s.Frame, s.FrameBy, a.V, a.Keyword)
 	s.Frame = to
 	return nil

@@ -109,3 +109,35 @@ func TestToVacuum(t *testing.T) {
 		t.Errorf("air below 2000 Å: %v", err)
 	}
 }
+
+// A correction that the user gives straight to LSRK is applied as it is, and only once.
+func TestCorrectionStraightToLSRK(t *testing.T) {
+	s := observed(frame.Topocentric, frame.Applied{Keyword: byUserWord, To: frame.LSRK, V: 30}, frame.Applied{Keyword: "B", To: frame.Barycentric, V: 13})
+	for range 2 {
+		if err := s.ToFrame(frame.LSRK); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if v := frame.Velocity(s.Wave[0], 4000); !(math.Abs(v-30) < 1e-6) || s.Frame != frame.LSRK {
+		t.Errorf("%.4f km/s, %s; want 30, LSRK", v, s.Frame)
+	}
+	if v, ok := s.Motion(); !ok || v != 30 {
+		t.Errorf("motion %g, %v", v, ok)
+	}
+	if err := s.ToFrame(frame.Topocentric); err != nil || !(math.Abs(s.Wave[0]-4000) < 1e-9) {
+		t.Errorf("back: %v, %.9f Å", err, s.Wave[0])
+	}
+}
+
+// The motion in LSRK is that of the observer and the Sun together, as a product.
+func TestMotionInLSRK(t *testing.T) {
+	s := observed(frame.Topocentric, frame.Applied{Keyword: "B", To: frame.Barycentric, V: 13})
+	s.Coord = &Coord{312.2345, 44.1234}
+	if err := s.ToFrame(frame.LSRK); err != nil {
+		t.Fatal(err)
+	}
+	v, ok := s.Motion()
+	if want := frame.Velocity(s.Wave[0], 4000); !ok || !(math.Abs(v-want) < 1e-9) || !(math.Abs(want-29.307) < 0.01) {
+		t.Errorf("motion %.6f, %v; the wavelengths moved by %.6f", v, ok, want)
+	}
+}

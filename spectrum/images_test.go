@@ -2,7 +2,9 @@ package spectrum
 
 import (
 	"bytes"
+	"encoding/binary"
 	"math"
+	"strconv"
 	"strings"
 	"testing"
 
@@ -194,5 +196,86 @@ func TestTablesRefuse(t *testing.T) {
 		if !oops.IsInput(err) || !strings.Contains(err.Error(), tc.want) {
 			t.Errorf("%s: %v; want %q", name, err, tc.want)
 		}
+	}
+}
+
+// extension makes the bytes of an image extension of doubles.
+func extension(name string, cards []string, data ...float64) []byte {
+	var b bytes.Buffer
+	line := func(s string) { b.WriteString((s + strings.Repeat(" ", 80))[:80]) }
+	line("XTENSION= 'IMAGE   '")
+	line("BITPIX  =                  -64")
+	line("NAXIS   =                    1")
+	line("NAXIS1  = " + strconv.Itoa(len(data)))
+	line("PCOUNT  =                    0")
+	line("GCOUNT  =                    1")
+	line("EXTNAME = '" + name + "'")
+	for _, c := range cards {
+		line(c)
+	}
+	line("END")
+	b.WriteString(strings.Repeat(" ", (2880-b.Len()%2880)%2880))
+	for _, x := range data {
+		binary.Write(&b, binary.BigEndian, x)
+	}
+	b.Write(make([]byte, (2880-b.Len()%2880)%2880))
+	return b.Bytes()
+}
+
+// Flux, error and flags in extensions of equal EXTVER belong together; the second
+// exposure keeps its own.
+func TestImageGroup(t *testing.T) {
+	axis := []string{"CRVAL1  = 5000.0", "CDELT1  = 1.0", "CTYPE1  = 'WAVE'", "CUNIT1  = 'Angstrom'"}
+	with := func(ver string) []string { return append([]string{"EXTVER  = " + ver}, axis...) }
+	head := strings.Repeat(" ", 2880)
+	head = ("SIMPLE  =                    T" + strings.Repeat(" ", 50) + "BITPIX  =                    8" + strings.Repeat(" ", 50) +
+		"NAXIS   =                    0" + strings.Repeat(" ", 50) + "END" + head)[:2880]
+	b := []byte(head)
+	for _, x := range [][]byte{extension("SCI", with("1"), 1, 2, 3), extension("ERR", with("1"), .1, .2, .3), extension("DQ", with("1"), 0, 0, 4),
+		extension("SCI", with("2"), 4, 5, 6), extension("VAR", with("2"), .04, .04, .04)} {
+		b = append(b, x...)
+	}
+	s, err := read(fits.FromBytes("a.fits", b), Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if len(s.Segments) != 2 {
+		t.Fatalf("%d segments", len(s.Segments))
+	}
+	a, c := &s.Segments[0], &s.Segments[1]
+	if a.Err[1] != 0.2 || !a.Mask[2].Bad() || a.Mask[1].Bad() || c.Flux[0] != 4 || !(math.Abs(c.Err[0]-0.2) < 1e-12) || c.Mask[2].Bad() {
+		t.Errorf("%v %v, %v %v", a.Err, a.Mask, c.Err, c.Mask)
+	}
+	if one, err := read(fits.FromBytes("a.fits", b), Options{HDU: "4"}); err != nil || len(one.Segments) != 1 || one.Segments[0].Flux[0] != 4 {
+		t.Errorf("HDU 4 alone: %v", err)
+	}
+}
+
+// formats/README §4.11: FUSE counts QUALITY 0 as bad, and zero flux with zero
+// error is a gap, even where all is faint.
+func TestFUSE(t *testing.T) {
+	rows := func(v ...float64) (out [][]float64) {
+		for _, x := range v {
+			out = append(out, []float64{x})
+		}
+		return out
+	}
+	b := vectorTable(t, []fits.Entry{e("TELESCOP", "FUSE"), e("V_HELIO", 12.0)},
+		fits.Vector{Name: "WAVE", Unit: "ANGSTROMS", Type: 'E', Rows: rows(1040, 1041, 1042, 1043, 1044)},
+		fits.Vector{Name: "FLUX", Unit: "ERG/CM2/S/A", Type: 'E', Rows: rows(1, 1, 0, 1, 1)},
+		fits.Vector{Name: "ERROR", Type: 'E', Rows: rows(1, 1, 0, 1, 1)},
+		fits.Vector{Name: "QUALITY", Type: 'I', Rows: rows(100, 0, 100, 100, 100)})
+	s, err := read(fits.FromBytes("a.fits", b), Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	g := &s.Segments[0]
+	for i, bad := range []bool{false, true, true, false, false} {
+		if g.Mask[i].Bad() != bad {
+			t.Errorf("pixel %d bad: %v, want %v", i, g.Mask[i].Bad(), bad)
+		}
+	}
+	if g.Medium != frame.Vacuum || g.Frame != frame.Heliocent || s.Layout != layoutRows {
+		t.Errorf("%s, %s, %s", g.Medium, g.Frame, s.Layout)
 	}
 }

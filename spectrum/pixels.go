@@ -12,6 +12,7 @@ import (
 type pixels struct {
 	wave, flux, err, cont []float64
 	bad                   []bool           // by the file's own quality flags
+	gaps                  bool             // an error of 0 is always a gap in this family of files
 	place                 func(int) string // where pixel i stands in the file; nil: "pixel i+1"
 }
 
@@ -32,7 +33,7 @@ func (s *Segment) fill(p pixels) error {
 		return err
 	}
 	s.Wave, s.Flux, s.Err, s.Continuum = p.wave, p.flux, p.err, p.cont
-	s.maskErrors()
+	s.maskErrors(p.gaps)
 	s.maskFiller()
 	if s.Good() == 0 {
 		s.note("none of the %d pixels is usable", len(s.Wave))
@@ -138,7 +139,7 @@ func bridge(wave []float64, lost []int) {
 
 // maskErrors masks pixels whose error is no error, keeps the zero counts of black
 // cores, and drops an error column that says nothing.
-func (s *Segment) maskErrors() {
+func (s *Segment) maskErrors(gaps bool) {
 	if s.Err == nil {
 		return
 	}
@@ -165,7 +166,7 @@ func (s *Segment) maskErrors() {
 		return
 	}
 	kept := 0
-	if zero > 0 && positive > 0 {
+	if zero > 0 && positive > 0 && !gaps {
 		kept = s.zeroCounts()
 	}
 	var bad []int
@@ -183,58 +184,6 @@ func (s *Segment) maskErrors() {
 	if kept > 0 {
 		s.note("%s of error 0 in dark cores kept as zero counts, with the smallest error of %d neighbours", count(kept, "pixel"), 2*zeroReach)
 	}
-}
-
-// zeroReach is how many pixels on each side lend their error to a pixel of zero
-// counts, and show how bright the spectrum is there.
-const zeroReach = 50
-
-// zeroCounts finds pixels of error exactly 0 that count no photon in a dark
-// core, where errors are the root of the counts, and gives them the smallest
-// positive error near by: that of about one count. A run of such pixels must lie
-// between two pixels that are dark themselves, at most half of what is usual
-// near by or within 5σ of nothing; the gap between two detectors does not.
-func (s *Segment) zeroCounts() int {
-	n, kept := len(s.Err), 0
-	usable := func(i int) bool { return s.Err[i] > 0 && finite(s.Err[i]) && s.Mask[i] == 0 }
-	for a := 0; a < n; a++ {
-		if s.Err[a] != 0 || s.Mask[a] != 0 {
-			continue
-		}
-		b := a // the run is a ≤ i < b; masked pixels do not end it
-		for b < n && !usable(b) {
-			b++
-		}
-		left := a - 1
-		for left >= 0 && !usable(left) {
-			left--
-		}
-		if left < 0 || b == n {
-			a = b
-			continue
-		}
-		var level, errs []float64
-		for i := max(0, left-zeroReach+1); i < min(n, b+zeroReach); i++ {
-			if usable(i) {
-				level, errs = append(level, s.Flux[i]), append(errs, s.Err[i])
-			}
-		}
-		slices.Sort(level)
-		half := 0.5 * level[len(level)/2]
-		dark := func(i int) bool { return s.Flux[i] <= half || s.Flux[i] <= 5*s.Err[i] }
-		if dark(left) && dark(b) {
-			floor := slices.Min(errs)
-			for i := a; i < b; i++ {
-				if s.Err[i] == 0 && s.Mask[i] == 0 && (s.Flux[i] <= half || s.Flux[i] <= 5*floor) {
-					s.Err[i] = floor
-					s.Mask[i] |= ZeroCount
-					kept++
-				}
-			}
-		}
-		a = b
-	}
-	return kept
 }
 
 // maskFiller masks the zeros with which pipelines fill the ends of a segment:

@@ -147,6 +147,28 @@ func same(a, b []float64) bool {
 	return true
 }
 
+// An ASCII table as in section 7.2 of the FITS Standard: fields by TBCOL and TFORM.
+func TestAsciiTable(t *testing.T) {
+	rows := "5000.0 1.5D0 Ca II" + "5001.5       K I  "
+	b := append(bytes.Clone(empty), header("XTENSION= 'TABLE   '", "BITPIX  = 8", "NAXIS   = 2", "NAXIS1  = 18", "NAXIS2  = 2", "PCOUNT  = 0", "GCOUNT  = 1", "TFIELDS = 3",
+		"TTYPE1  = 'wave'", "TBCOL1  = 1", "TFORM1  = 'F6.1'", "TTYPE2  = 'flux'", "TBCOL2  = 8", "TFORM2  = 'D5.1'", "TSCAL2  = 2.0", "TTYPE3  = 'ion'", "TBCOL3  = 14", "TFORM3  = 'A5'")...)
+	h := open(t, append(b, pad([]byte(rows), ' ')...)).HDUs[1]
+	if h.Err != nil {
+		t.Fatal(h.Err)
+	}
+	for i, want := range [][]float64{{5000, 5001.5}, {3, math.NaN()}} {
+		if got, err := h.Column(i); err != nil || !same(got, want) {
+			t.Errorf("column %d: %v, %v; want %v", i, got, err, want)
+		}
+	}
+	if s, err := h.Text(2, 1); err != nil || s != "K I" {
+		t.Errorf("text %q, %v", s, err)
+	}
+	if _, err := h.Column(2); !oops.IsInput(err) {
+		t.Errorf("text as numbers: %v", err)
+	}
+}
+
 func TestImageScaling(t *testing.T) {
 	b := append(header("SIMPLE  = T", "BITPIX  = 16", "NAXIS   = 2", "NAXIS1  = 2", "NAXIS2  = 2", "BSCALE  = 2.0", "BZERO   = 1", "BLANK   = -1"),
 		pad([]byte{0, 1, 0xff, 0xff, 0xff, 0xfe, 0, 3}, 0)...)
