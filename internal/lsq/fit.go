@@ -68,6 +68,10 @@ func (s Solution) OK() bool { return s.Stop == Converged || s.Stop == Cornered }
 // Changes of χ² below this part of it are rounding.
 const rounding = 1e-14
 
+// A step that is predicted to gain more than this many Tol, and gains nothing at any
+// damping, tells of derivatives that do not belong to the residuals.
+const unkept = 1e4
+
 // Fit makes Σ r_i(x)² small from the start x, each parameter within lo … hi (nil:
 // no bounds). x is not changed. A Workspace, kept by one goroutine and given again,
 // saves the memory of the iteration; nil makes a new one.
@@ -138,7 +142,8 @@ func check(m int, x, lo, hi []float64) error {
 // iterate moves ws.now to the minimum.
 func (ws *Workspace) iterate(p Problem, lo, hi []float64, o Options, s *Solution) Stop {
 	lambda, nu := o.Lambda, 2.0
-	again := math.Inf(1) // χ² when the damping was last set back
+	again := math.Inf(1)         // χ² when the damping was last set back,
+	back, promised := false, 0.0 // and what the step after that was predicted to gain
 	for s.Iterations < o.MaxIterations {
 		s.Iterations++
 		ws.hold(lo, hi)
@@ -159,6 +164,9 @@ func (ws *Workspace) iterate(p Problem, lo, hi []float64, o Options, s *Solution
 			}
 			clip(next.x, next.x, lo, hi)
 			predicted := ws.gain()
+			if back {
+				back, promised = false, predicted
+			}
 			p.Eval(next.x, next.r, next.jac)
 			s.Evaluations++
 			next.chi2 = floats.Dot(next.r, next.r)
@@ -179,10 +187,14 @@ func (ws *Workspace) iterate(p Problem, lo, hi []float64, o Options, s *Solution
 			}
 			if done {
 				// A short step may only mean strong damping: try once more without.
-				if !(lambda > 10*o.Lambda && now.chi2 < again-10*tol) {
+				strong := lambda > 10*o.Lambda
+				if strong && now.chi2 < again-10*tol {
+					again, lambda, nu, back = now.chi2, o.Lambda, 2, true
+				} else if strong && promised > unkept*tol {
+					return Stuck
+				} else {
 					return Converged
 				}
-				again, lambda, nu = now.chi2, o.Lambda, 2
 			}
 			if accept {
 				break

@@ -92,10 +92,14 @@ func parse(r io.Reader, name string, pixelA float64) (Table, error) {
 
 // header reads the names of the columns.
 func (t *Table) header(words []string, name, where string) error {
-	unit, ok := strings.CutPrefix(words[0], "offset_")
+	first := ""
+	if len(words) > 0 { // a line of separators has none
+		first = words[0]
+	}
+	unit, ok := strings.CutPrefix(first, "offset_")
 	if !ok || len(words) < 2 {
 		return oops.Inputf(name, where, "name the columns first: offset_A, offset_kms or offset_pixel, then the wavelengths in Å",
-			"the header begins with %q and has %d columns", words[0], len(words))
+			"the header begins with %q and has %d columns", first, len(words))
 	}
 	t.Unit = Unit(unit)
 	t.Density = make([][]float64, len(words)-1)
