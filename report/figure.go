@@ -3,6 +3,7 @@ package report
 import (
 	"bytes"
 	"fmt"
+	"html"
 	"image/color"
 	"io"
 	"regexp"
@@ -61,12 +62,9 @@ func (f Figure) paint(c draw.Canvas) {
 }
 
 var (
-	svgText  = regexp.MustCompile(`(?s)<text x="([^"]*)" y="([^"]*)" transform="scale\(1, -1\)"\s+style="([^"]*)">(.*?)</text>`)
+	svgText  = regexp.MustCompile(`(?s)^<text x="([^"]*)" y="([^"]*)" transform="scale\(1, -1\)"\s+style="([^"]*)">(.*)</text>$`)
 	svgSize  = regexp.MustCompile(`font-size:([0-9.]+)px`)
-	svgBold  = regexp.MustCompile(`font-weight:bold`)
 	svgStart = regexp.MustCompile(`(?s)^<\?xml version="1\.0"\?>\n<!--.*?-->\n(<svg [^>]*)>\n`)
-	svgBack  = strings.NewReplacer("&#34;", `"`, "&#39;", "'", "&lt;", "<", "&gt;", ">", "&amp;", "&")
-	svgEsc   = strings.NewReplacer("&", "&amp;", "<", "&lt;", ">", "&gt;", `"`, "&#34;")
 )
 
 // finish adds what the SVG writer of gonum/plot leaves out: fallback fonts, the
@@ -77,27 +75,47 @@ func (f Figure) finish(svg []byte) []byte {
 $1 role="img">
 <title>%s</title>
 <desc>%s</desc>
-`, dollar(svgEsc.Replace(unmark(f.Title))), dollar(svgEsc.Replace(unmark(f.Caption))))
+`, dollar(html.EscapeString(unmark(f.Title))), dollar(html.EscapeString(unmark(f.Caption))))
 	svg = svgStart.ReplaceAll(svg, []byte(head))
-	return svgText.ReplaceAllFunc(svg, func(m []byte) []byte {
-		part := svgText.FindSubmatch(m)
-		style, words := string(part[3]), string(part[4])
-		size, weight := 0.0, xfont.WeightNormal
-		if s := svgSize.FindStringSubmatch(style); s != nil {
-			size, _ = strconv.ParseFloat(s[1], 64) // the pattern admits numbers only
+	var out bytes.Buffer
+	out.Grow(len(svg) + len(svg)/8)
+	const start, end = "<text ", "</text>"
+	for { // the pattern only ever sees one text: it is slow on a whole file
+		i := bytes.Index(svg, []byte(start))
+		if i < 0 {
+			break
 		}
-		face := "" // the usual weight needs no word
-		if svgBold.MatchString(style) {
-			weight, face = xfont.WeightBold, ` font-weight="bold"`
-		}
-		if i := strings.Index(style, "fill:"); i >= 0 {
-			face += fmt.Sprintf(` fill="%s"`, strings.SplitN(style[i+5:], ";", 2)[0])
-		}
-		font := fonts().Lookup(sans(size, weight), vg.Points(size))
-		long := font.Width(svgBack.Replace(words)).Points()
-		return fmt.Appendf(nil, `<text x="%s" y="%s" transform="scale(1,-1)" xml:space="preserve" font-family="Liberation Sans,Arial,Helvetica,sans-serif" font-size="%gpx"%s textLength="%.2f">%s</text>`,
-			part[1], part[2], size, face, long, words)
-	})
+		j := i + bytes.Index(svg[i:], []byte(end)) + len(end)
+		out.Write(svg[:i])
+		out.Write(finishText(svg[i:j]))
+		svg = svg[j:]
+	}
+	out.Write(svg)
+	return out.Bytes()
+}
+
+// finishText is finish for one text element.
+func finishText(m []byte) []byte {
+	part := svgText.FindSubmatch(m)
+	if part == nil {
+		panic("report: the SVG writer's text has another form: " + string(m))
+	}
+	style, words := string(part[3]), string(part[4])
+	size, weight := 0.0, xfont.WeightNormal
+	if s := svgSize.FindStringSubmatch(style); s != nil {
+		size, _ = strconv.ParseFloat(s[1], 64) // the pattern admits numbers only
+	}
+	more := "" // the usual weight and black need no word
+	if strings.Contains(style, "font-weight:bold") {
+		weight, more = xfont.WeightBold, ` font-weight="bold"`
+	}
+	if i := strings.Index(style, "fill:"); i >= 0 {
+		more += fmt.Sprintf(` fill="%s"`, strings.SplitN(style[i+5:], ";", 2)[0])
+	}
+	face := fonts().Lookup(sans(size, weight), vg.Points(size))
+	long := face.Width(html.UnescapeString(words)).Points()
+	return fmt.Appendf(nil, `<text x="%s" y="%s" transform="scale(1,-1)" xml:space="preserve" font-family="Liberation Sans,Arial,Helvetica,sans-serif" font-size="%gpx"%s textLength="%.2f">%s</text>`,
+		part[1], part[2], size, more, long, words)
 }
 
 // dollar keeps $ from being read as a group of the pattern.

@@ -106,7 +106,7 @@ func growthAxis(ps []growthPoint) axis {
 
 // theory returns log W/λ along the axis for one Doppler parameter.
 func theory(l atomic.Line, b float64, x axis) (xs, ys []float64) {
-	const n = 120
+	const n = 80
 	for i := range n + 1 {
 		at := x.Lo + (x.Hi-x.Lo)*float64(i)/n
 		w := cog.Width(l, at-math.Log10(l.F*l.Wave), b)

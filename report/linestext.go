@@ -12,18 +12,18 @@ import (
 // LinesText writes a table of transitions with what their numbers rest on.
 func LinesText(w io.Writer, ls []atomic.Line, o Options) error {
 	p := newPage(o)
-	g := &grid{indent: 0, align: "lrrrrrllf", head: []string{"line", "vacuum Å", "air Å", "f", "±", "γ (s⁻¹)", "parts", "f, λ", "remarks"}}
+	g := &grid{indent: 0, align: "llrrrrrllf", head: []string{"line", "alias", "vacuum Å", "air Å", "f", "±", "γ (s⁻¹)", "f, λ", "source of f", "remarks"}}
 	memory := 0
 	for _, l := range ls {
-		air, gamma, parts, ferr := "", "", "", ""
+		air, gamma, alias, ferr := "", "", "", ""
 		if l.WaveAir > 0 {
 			air = fmt.Sprintf("%.4f", l.WaveAir)
 		}
 		if l.Gamma > 0 {
 			gamma = fmt.Sprintf("%.2e", l.Gamma)
 		}
-		if len(l.Parts) > 0 {
-			parts = fmt.Sprint(len(l.Parts))
+		if len(l.Alias) > 0 {
+			alias = l.Alias[0]
 		}
 		if l.FErr > 0 {
 			ferr = fmt.Sprintf("%.0f %%", 100*l.FErr/l.F)
@@ -33,8 +33,8 @@ func LinesText(w io.Writer, ls []atomic.Line, o Options) error {
 			memory++
 			t = warn
 		}
-		g.add(plainCell(l.Name), plainCell(fmt.Sprintf("%.4f", l.Wave)), plainCell(air), plainCell(fmt.Sprintf("%.4g", l.F)), plainCell(ferr),
-			plainCell(gamma), plainCell(parts), cell{statusText(l), t}, plainCell(lineRemarks(l)))
+		g.add(plainCell(l.Name), plainCell(alias), plainCell(fmt.Sprintf("%.4f", l.Wave)), plainCell(air), plainCell(fmt.Sprintf("%.4g", l.F)), plainCell(ferr),
+			plainCell(gamma), cell{statusText(l), t}, plainCell(l.FSource), plainCell(lineRemarks(l)))
 	}
 	if len(ls) == 0 {
 		p.para("", "no lines", normal)
@@ -63,9 +63,6 @@ func statusText(l atomic.Line) string {
 
 func lineRemarks(l atomic.Line) string {
 	var parts []string
-	if len(l.Alias) > 0 {
-		parts = append(parts, l.Alias[0])
-	}
 	if l.Level != "" && !strings.Contains(l.Name, l.Level) {
 		parts = append(parts, l.Level)
 	}
@@ -75,7 +72,9 @@ func lineRemarks(l atomic.Line) string {
 	if l.FSet != "" && l.FSet != "default" {
 		parts = append(parts, "f set "+l.FSet)
 	}
-	parts = append(parts, "f: "+l.FSource)
+	if len(l.Parts) > 0 {
+		parts = append(parts, count(len(l.Parts), "part")+" of hyperfine or isotope structure")
+	}
 	if l.File != "" {
 		parts = append(parts, "from "+l.File)
 	}

@@ -5,7 +5,10 @@ import (
 	"io"
 	"os"
 	"path/filepath"
+	"runtime"
 	"strings"
+	"sync"
+	"sync/atomic"
 
 	"lacuna/internal/disk"
 	"lacuna/internal/oops"
@@ -43,20 +46,31 @@ func WriteGrowth(dir string, rs []survey.Record, figures bool) error {
 	return writeFigures(dir, rs, GrowthFigures)
 }
 
+// writeFigures writes the figures of each record, as many records at a time as
+// there are processors. The error returned is that of the first record with one.
 func writeFigures(dir string, rs []survey.Record, of func(survey.Record) []Figure) error {
 	folder := filepath.Join(dir, figuresFolder)
-	made := false
-	for _, r := range rs {
-		for _, f := range of(r) {
-			if !made {
-				if err := os.MkdirAll(folder, 0o755); err != nil {
-					return err
+	if err := os.MkdirAll(folder, 0o755); err != nil {
+		return err
+	}
+	errs := make([]error, len(rs))
+	var next atomic.Int64
+	var wg sync.WaitGroup
+	for range min(runtime.GOMAXPROCS(0), len(rs)) {
+		wg.Go(func() {
+			for i := next.Add(1) - 1; int(i) < len(rs); i = next.Add(1) - 1 {
+				for _, f := range of(rs[i]) {
+					if errs[i] == nil {
+						errs[i] = disk.AtomicWrite(filepath.Join(folder, f.Name+".svg"), f.WriteSVG)
+					}
 				}
-				made = true
 			}
-			if err := disk.AtomicWrite(filepath.Join(folder, f.Name+".svg"), f.WriteSVG); err != nil {
-				return err
-			}
+		})
+	}
+	wg.Wait()
+	for _, err := range errs {
+		if err != nil {
+			return err
 		}
 	}
 	return nil
