@@ -92,7 +92,6 @@ func measured(k sketch) measure.Width {
 	case !w.Detected:
 		w.Limit, w.LimitWidth, w.LimitB = 3*total, 14, 2
 		w.Linear = budget.Limit(w.Linear, w.Limit*perA, 3)
-		w.W.Flag |= budget.Upper &^ budget.Upper
 	case w.Depth > 0.9:
 		w.Saturated = "flux below 0.1 of the continuum in 9 adjacent pixels"
 		w.AOD.Flag |= budget.Lower | budget.Saturated

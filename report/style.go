@@ -17,8 +17,7 @@ var (
 	blue      = color.NRGBA{0x00, 0x72, 0xB2, 255}
 	vermilion = color.NRGBA{0xD5, 0x5E, 0x00, 255}
 	green     = color.NRGBA{0x00, 0x9E, 0x73, 255}
-	purple    = color.NRGBA{0xCC, 0x79, 0xA7, 255}
-	purpleInk = color.NRGBA{0x8A, 0x3A, 0x68, 255} // the same hue, dark enough for letters
+	purpleInk = color.NRGBA{0x8A, 0x3A, 0x68, 255} // reddish purple, dark enough for letters
 
 	paleBlue   = color.NRGBA{0xE3, 0xEE, 0xF6, 255} // integration range
 	midBlue    = color.NRGBA{0xB5, 0xD3, 0xE8, 255} // area under N_a(v)

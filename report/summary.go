@@ -171,9 +171,7 @@ func remarks(w measure.Width) string {
 			number(w.LimitWidth, decimalsOf(w.LimitWidth)), number(w.LimitB, decimalsOf(w.LimitB))))
 	}
 	f := w.Flag | w.W.Flag
-	for _, word := range (f &^ (budget.Upper | budget.Lower | budget.Interval | budget.Blended)).Words() {
-		parts = append(parts, word)
-	}
+	parts = append(parts, (f &^ (budget.Upper | budget.Lower | budget.Interval | budget.Blended)).Words()...)
 	if w.Saturated != "" && f&budget.Saturated == 0 {
 		parts = append(parts, "saturated")
 	}
