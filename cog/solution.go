@@ -1,6 +1,7 @@
 package cog
 
 import (
+	"errors"
 	"math"
 
 	"lacuna/internal/lsq"
@@ -27,7 +28,7 @@ func (f *fit) minimum() error {
 	var all []solution
 	var ws lsq.Workspace
 	for i, b := range floor {
-		if i > 0 && floor[i-1].chi2 < b.chi2 || i < len(floor)-1 && floor[i+1].chi2 <= b.chi2 || !(b.chi2 < low+20) {
+		if i > 0 && floor[i-1].chi2 < b.chi2 || i < len(floor)-1 && floor[i+1].chi2 <= b.chi2 || !(b.chi2 <= low*(1+1e-9)+20) {
 			continue
 		}
 		s, err := f.exact.polish(b.x, b.y, v.ymin, v.ymax, &ws)
@@ -43,6 +44,9 @@ func (f *fit) minimum() error {
 		}
 		all = append(all, next)
 	}
+	if len(all) == 0 {
+		return errors.New("curve of growth: χ² cannot be computed for these widths and errors")
+	}
 	best := 0
 	for i, a := range all {
 		if a.chi2 <= all[best].chi2+equal {
@@ -50,6 +54,9 @@ func (f *fit) minimum() error {
 		}
 	}
 	f.best, f.chi2, f.res.Stop = all[best].x, all[best].chi2, string(all[best].stop)
+	if all[best].stop != lsq.Converged {
+		f.note("the fit ended before it converged: %s", all[best].stop)
+	}
 	f.first = 0.1
 	if _, cov := f.exact.response(f.best, true); cov[len(cov)-1] > 0 {
 		f.first = math.Max(1e-3, math.Min(math.Sqrt(cov[len(cov)-1]), 0.3))

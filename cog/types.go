@@ -1,5 +1,3 @@
-// Package cog is the curve of growth: exact equivalent widths of Voigt profiles
-// and what measured widths say about N and b.
 package cog
 
 import (

@@ -93,6 +93,9 @@ func (f *fit) limit(k int) error {
 	g := func(x float64) float64 { return chi2(x) - target }
 	x := root(g, a, g(a), c, g(c), 1e-9)
 	n = budget.Limit(budget.Number{X: own.X, Shifts: own.Shifts, From: n.From}, x, f.o.Sigma)
+	if own.X >= 2*own.Err() {
+		n.Flag |= budget.Marginal
+	}
 	f.res.LogN[k], f.res.BestLogN[k] = n, x
 	f.note("log N(%s): not detected (linear N = %.2g ± %.2g cm⁻²); upper limit at %g σ for b = %.3g km/s", l.Name, own.X, own.Err(), f.o.Sigma, b)
 	return nil
