@@ -5,6 +5,7 @@ import (
 	"math"
 	"os"
 	"path/filepath"
+	"runtime"
 	"slices"
 	"strings"
 	"testing"
@@ -231,5 +232,19 @@ func TestBadFiles(t *testing.T) {
 				}
 			}
 		})
+	}
+}
+
+// formats/bad/expected.json gives a file that promises 4 TB no more than 64 MiB.
+func TestHugePromiseCostsNoMemory(t *testing.T) {
+	path := filepath.Join(check.Shared(t, "formats/bad"), "b03_huge_naxis1.fits")
+	var before, after runtime.MemStats
+	runtime.ReadMemStats(&before)
+	if _, err := spectrum.Read(path, spectrum.Options{}); err == nil {
+		t.Fatal("it was read")
+	}
+	runtime.ReadMemStats(&after)
+	if used := after.TotalAlloc - before.TotalAlloc; used > 1<<20 { // headers are a few kB
+		t.Errorf("%d bytes allocated", used)
 	}
 }

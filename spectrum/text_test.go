@@ -40,6 +40,7 @@ func TestText(t *testing.T) {
 		"columns by the user":      {"x y z\n1 5000 7\n2 5001 8\n", Options{WaveCol: "y", FluxCol: "3"}, 5000, 2, false, 0},
 		"no errors, says the user": {"5000 1 7\n5001 2 8\n", Options{ErrCol: "none"}, 5000, 2, false, 0},
 		"text column not used":     {"wave,flux,note\n5000,1,ok\n5001,2,\"a, b\"\n", Options{}, 5000, 2, false, 0},
+		"good or missing":          {"wave,flux,good\n5000,1,True\n5001,1,\n5002,1,False\n", Options{}, 5000, 3, false, 2},
 		"no line end":              {"5000 1\n5001 2", Options{}, 5000, 2, false, 0},
 		"Latin-1 comment":          {"# \xc5ngstr\xf6m\n5000 1\n5001 2\n", Options{}, 5000, 2, false, 0},
 	} {

@@ -20,7 +20,7 @@ const MaxInflated = 2 << 30
 
 // inMemory is how much of an unpacked file is kept in memory; what is larger
 // goes to a temporary file.
-const inMemory = 64 << 20
+const inMemory = 16 << 20
 
 // Content is the bytes of one file, unpacked where it was gzip, for reading
 // anywhere in it.

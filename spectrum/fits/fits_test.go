@@ -417,3 +417,36 @@ func TestSharedSamplesScan(t *testing.T) {
 		f.Close()
 	}
 }
+
+// A file that unpacks to more than is kept in memory goes through a temporary
+// file, which is gone at once; its bytes are the same.
+func TestGzipSpools(t *testing.T) {
+	dir := t.TempDir()
+	t.Setenv("TMPDIR", dir)
+	p := filepath.Join(dir, "large.gz")
+	f, err := os.Create(p)
+	if err != nil {
+		t.Fatal(err)
+	}
+	z, _ := gzip.NewWriterLevel(f, gzip.BestSpeed)
+	zeros := make([]byte, 1<<20)
+	for range 20 {
+		z.Write(zeros)
+	}
+	z.Write([]byte("end"))
+	z.Close()
+	f.Close()
+	c, err := fits.Load(p)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer c.Close()
+	var last [3]byte
+	c.ReadAt(last[:], c.Size-3)
+	if c.Size != 20<<20+3 || string(last[:]) != "end" {
+		t.Errorf("%d bytes, ending in %q", c.Size, last)
+	}
+	if left, _ := os.ReadDir(dir); len(left) != 1 {
+		t.Errorf("%d files in the temporary folder, want the packed one alone", len(left))
+	}
+}
