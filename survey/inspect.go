@@ -21,7 +21,7 @@ type Audit struct {
 // Inspect reads a spectrum as it is, audits the noise of each segment, and says
 // which transitions fall into it. Where the medium is unknown, so are the lines.
 func Inspect(path string, sp config.Spectrum) (*spectrum.Spectrum, []Audit, error) {
-	s, err := spectrum.Read(path, readOptions(sp, frame.Heliocent))
+	s, err := spectrum.Read(path, readOptions(sp, nil, frame.Heliocent))
 	if err != nil {
 		return nil, nil, err
 	}

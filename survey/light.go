@@ -23,7 +23,7 @@ func (c *chain) lights(s config.Sightline) ([]Light, []SpectrumInfo, error) {
 	for k, sp := range s.Spectra {
 		where := fmt.Sprintf("%s: spectrum %d", s.Name, k+1)
 		path := c.cfg.Path(sp.File)
-		ls, info, err := Open(path, sp, c.cfg.Frame, c.formula)
+		ls, info, err := Open(path, sp, coord(s), c.cfg.Frame, c.formula)
 		if err != nil {
 			return nil, nil, fmt.Errorf("%s: %w", where, err)
 		}
@@ -61,9 +61,9 @@ func (c *chain) inputs(s config.Sightline) ([]Input, error) {
 }
 
 // Open reads one spectrum and brings its segments to vacuum and a frame. What the
-// user says of it (sp) takes the place of what the file says.
-func Open(path string, sp config.Spectrum, to frame.Kind, formula frame.Formula) ([]Light, SpectrumInfo, error) {
-	file, err := spectrum.Read(path, readOptions(sp, to))
+// user says of it (sp, and the direction at) takes the place of what the file says.
+func Open(path string, sp config.Spectrum, at *spectrum.Coord, to frame.Kind, formula frame.Formula) ([]Light, SpectrumInfo, error) {
+	file, err := spectrum.Read(path, readOptions(sp, at, to))
 	if err != nil {
 		return nil, SpectrumInfo{}, err
 	}
@@ -81,6 +81,7 @@ func Open(path string, sp config.Spectrum, to frame.Kind, formula frame.Formula)
 		info.Medium, info.MediumBy = string(seg.Medium), seg.MediumBy
 		info.Frame, info.FrameBy = string(seg.Frame), seg.FrameBy
 		info.SHA256 = seg.Source.SHA256
+		found := slices.Clone(seg.Shift) // before any is applied
 		if err := seg.ToVacuum(formula); err != nil {
 			return nil, SpectrumInfo{}, err
 		}
@@ -93,7 +94,7 @@ func Open(path string, sp config.Spectrum, to frame.Kind, formula frame.Formula)
 		}
 		l.Earth, l.Placed = seg.Motion()
 		if len(lights) == 0 {
-			info.Shifts = seg.Shift
+			info.Shifts = usedShift(found, seg.Shift)
 			info.R = l.R
 			switch {
 			case sp.R > 0:
@@ -110,18 +111,38 @@ func Open(path string, sp config.Spectrum, to frame.Kind, formula frame.Formula)
 	return lights, info, nil
 }
 
+// coord is the direction of a sightline, where its survey gives it.
+func coord(s config.Sightline) *spectrum.Coord {
+	if s.RA == nil || s.Dec == nil {
+		return nil
+	}
+	return &spectrum.Coord{RA: *s.RA, Dec: *s.Dec}
+}
+
 // readOptions is the user's word on a file.
-func readOptions(sp config.Spectrum, to frame.Kind) spectrum.Options {
+func readOptions(sp config.Spectrum, at *spectrum.Coord, to frame.Kind) spectrum.Options {
 	o := spectrum.Options{
 		Row: sp.Row, WaveCol: sp.Columns.Wave, FluxCol: sp.Columns.Flux, ErrCol: sp.Columns.Err,
 		ContinuumCol: sp.ContinuumColumn, WaveUnit: sp.Unit, Medium: sp.Medium, Frame: sp.Frame,
 		Correction: sp.Correction, CorrectionTo: to, Resolution: sp.R,
-		Normalised: sp.Normalised != nil && *sp.Normalised,
+		Normalised: sp.Normalised != nil && *sp.Normalised, Coord: at,
 	}
 	if sp.HDU != nil {
 		o.HDU = strconv.Itoa(*sp.HDU)
 	}
 	return o
+}
+
+// usedShift lists the corrections found with a file: Done says what the file had
+// applied itself. One that was found but plays no part is left out.
+func usedShift(found, after []frame.Applied) []frame.Applied {
+	var out []frame.Applied
+	for i, a := range found {
+		if a.Done || i < len(after) && after[i].Done {
+			out = append(out, a)
+		}
+	}
+	return out
 }
 
 // maskRanges marks the user's ranges: Å in the file's own medium and frame.

@@ -3,6 +3,7 @@ package survey
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"lacuna/atomic"
@@ -30,6 +31,7 @@ type LineTask struct {
 	File       string       // "": every file
 	Order      *int         // nil: every order
 	Optional   bool         // no error where no spectrum holds it
+	Also       []string     // other transitions asked for on this sightline
 
 	Zero    func(file string) measure.Zero // prior, where no black core measures it
 	ContErr func(file string) float64      // relative error of a given continuum
@@ -54,16 +56,7 @@ func (l Light) covers(line atomic.Line, window [2]float64) bool {
 
 // piece cuts a line's neighbourhood out of a segment and places its continuum.
 func (l Light) piece(t LineTask, table *atomic.Table) (measure.Piece, error) {
-	span := t.Window[1] - t.Window[0]
-	lo, hi := t.Window[0]-3*span, t.Window[1]+3*span
-	for _, c := range t.Continuum {
-		lo, hi = min(lo, c[0]), max(hi, c[1])
-	}
-	if len(t.Continuum) == 0 { // at least 60 pixels on each side
-		if d := pixel(l.Seg.Wave, t.Line.Wave); d > 0 {
-			lo, hi = min(lo, t.Window[0]-60*d), max(hi, t.Window[1]+60*d)
-		}
-	}
+	lo, hi := l.reach(t, table)
 	cut := l.Seg.Cut(frame.Wavelength(t.Line.Wave, lo), frame.Wavelength(t.Line.Wave, hi))
 	p := measure.Piece{
 		Line: t.Line, Wave: cut.Wave, Flux: cut.Flux, Err: cut.Err, Mask: cut.Mask,
@@ -81,6 +74,8 @@ func (l Light) piece(t LineTask, table *atomic.Table) (measure.Piece, error) {
 	}
 	p.Neighbours = l.neighbours(t, table)
 	o := continuum.Options{Degree: t.Degree, MaxDegree: t.MaxDegree, Exclude: l.exclude(t, lo, hi, table)}
+	o.Target = [2]float64{frame.Wavelength(t.Line.Wave, t.Window[0]), frame.Wavelength(t.Line.Wave, t.Window[1])}
+	o.Noise = l.noise(t, table)
 	for _, c := range t.Continuum {
 		o.Windows = append(o.Windows, [2]float64{frame.Wavelength(t.Line.Wave, c[0]), frame.Wavelength(t.Line.Wave, c[1])})
 	}
@@ -210,6 +205,80 @@ func notCovered(lights []Light, t LineTask) error {
 	return oops.Input("", t.Line.Name, what, "there is "+strings.Join(have, ", "))
 }
 
+// The continuum of a line reaches to continuumWidths line widths and
+// continuumPixels clean pixels on each side, but never farther than farthest.
+// (The first two are common practice, no source.)
+const (
+	continuumWidths = 3
+	continuumPixels = 60
+	farthest        = 1500 // km/s
+)
+
+// reach returns the range (km/s) that the piece of a line needs: the user's
+// continuum ranges, or enough clean pixels on both sides of the window.
+func (l Light) reach(t LineTask, table *atomic.Table) (lo, hi float64) {
+	if len(t.Continuum) > 0 {
+		lo, hi = t.Window[0], t.Window[1]
+		for _, c := range t.Continuum {
+			lo, hi = min(lo, c[0]), max(hi, c[1])
+		}
+		return lo, hi
+	}
+	span := continuumWidths * (t.Window[1] - t.Window[0])
+	taken := l.exclude(t, t.Window[0]-farthest, t.Window[1]+farthest, table)
+	wave, rest := l.Seg.Wave, t.Line.Wave
+	clean := func(i int) bool {
+		if l.Seg.Mask[i].Bad() {
+			return false
+		}
+		for _, r := range taken {
+			if wave[i] >= r[0] && wave[i] <= r[1] {
+				return false
+			}
+		}
+		return true
+	}
+	first, _ := slices.BinarySearch(wave, frame.Wavelength(rest, t.Window[0]))
+	lo = t.Window[0]
+	for i, n := first-1, 0; i >= 0 && lo > t.Window[0]-farthest && (n < continuumPixels || lo > t.Window[0]-span); i-- {
+		if lo = frame.Velocity(wave[i], rest); clean(i) {
+			n++
+		}
+	}
+	last, _ := slices.BinarySearch(wave, frame.Wavelength(rest, t.Window[1]))
+	hi = t.Window[1]
+	for i, n := last, 0; i < len(wave) && hi < t.Window[1]+farthest && (n < continuumPixels || hi < t.Window[1]+span); i++ {
+		if hi = frame.Velocity(wave[i], rest); clean(i) {
+			n++
+		}
+	}
+	return lo, hi
+}
+
+// noiseReach is how many pixels on each side of a line its noise is measured on:
+// enough for the correlation, near enough for the same detector and blaze.
+const noiseReach = 1500
+
+// noise measures the noise about a line on many short stretches of continuum: its
+// correlation rests on far more pixels than the continuum of the line. nil where
+// there is too little continuum.
+func (l Light) noise(t LineTask, table *atomic.Table) *continuum.Noise {
+	at, _ := slices.BinarySearch(l.Seg.Wave, t.Line.Wave)
+	a, b := max(0, at-noiseReach), min(len(l.Seg.Wave), at+noiseReach)
+	w := l.Seg.Wave[a:b]
+	taken := l.exclude(t, frame.Velocity(w[0], t.Line.Wave), frame.Velocity(w[len(w)-1], t.Line.Wave), table)
+	var err []float64
+	if l.Seg.Err != nil {
+		err = l.Seg.Err[a:b]
+	}
+	_, n, e := continuum.Audit(w, l.Seg.Flux[a:b], err, l.Seg.Mask[a:b], taken)
+	if e != nil {
+		return nil
+	}
+	n.Ratio = 0 // the level of the noise is the line's own
+	return &n
+}
+
 // neighbours lists what else may absorb in the window of a line.
 func (l Light) neighbours(t LineTask, table *atomic.Table) []measure.Feature {
 	return measure.Neighbours(t.Line, t.Window, l.surroundings(t, t.Window[0], t.Window[1], table))
@@ -237,24 +306,21 @@ func (l Light) surroundings(t LineTask, lo, hi float64, table *atomic.Table) mea
 	return s
 }
 
-// exclude lists the ranges that are never continuum: the line's own window, and
-// transitions that may be strong, at the velocities of the gas.
+// exclude lists the ranges that are never continuum, in Å: the line's own window
+// and, between lo and hi km/s, lines of the air and those transitions that are
+// likely to be there: of the same species, or asked for in this run. Others are
+// left to the search for line-free regions.
 func (l Light) exclude(t LineTask, lo, hi float64, table *atomic.Table) [][2]float64 {
 	out := [][2]float64{{frame.Wavelength(t.Line.Wave, t.Window[0]), frame.Wavelength(t.Line.Wave, t.Window[1])}}
 	for _, f := range measure.Neighbours(t.Line, [2]float64{lo, hi}, l.surroundings(t, lo, hi, table)) {
-		if !f.Negligible && (f.Kind == "transition" || f.Kind == "telluric" && l.Placed) {
+		likely := f.Kind == "telluric" && l.Placed
+		if f.Kind == "transition" && !f.Negligible {
+			line, err := table.Find(f.Name)
+			likely = err == nil && line.Carrier() == t.Line.Carrier() || slices.Contains(t.Also, f.Name)
+		}
+		if likely {
 			out = append(out, [2]float64{frame.Wavelength(f.Wave, f.Range[0]), frame.Wavelength(f.Wave, f.Range[1])})
 		}
 	}
 	return out
-}
-
-// pixel is the width in km/s of the pixels near a wavelength, 0 outside.
-func pixel(wave []float64, at float64) float64 {
-	for i := 1; i < len(wave); i++ {
-		if wave[i] >= at {
-			return math.Abs(wave[i]-wave[i-1]) / at * atomic.C
-		}
-	}
-	return 0
 }

@@ -7,7 +7,6 @@ import (
 	"lacuna/config"
 	"lacuna/internal/oops"
 	"lacuna/measure"
-	"lacuna/spectrum/frame"
 )
 
 // record runs one sightline; a panic in the chain is a bug and is not caught.
@@ -108,6 +107,11 @@ func (c *chain) tasks(s config.Sightline) ([]LineTask, error) {
 		}
 		out = append(out, t)
 	}
+	for i := range out {
+		for _, l := range s.Lines {
+			out[i].Also = append(out[i].Also, l.Name)
+		}
+	}
 	return out, nil
 }
 
@@ -121,17 +125,4 @@ func priorZero(s config.Sightline, file string) measure.Zero {
 		}
 	}
 	return measure.Zero{Level: z.Level, Err: z.Err, By: by}
-}
-
-// frameName is a frame in the words of people.
-func frameName(k frame.Kind) string {
-	switch k {
-	case frame.Heliocent:
-		return "heliocentric"
-	case frame.Barycentric:
-		return "barycentric"
-	case frame.Topocentric:
-		return "topocentric"
-	}
-	return string(k)
 }

@@ -46,7 +46,7 @@ Example: lacuna demo --out lantern`,
 			if err != nil {
 				return err
 			}
-			if err := runSurvey(c, cfg, filepath.Join(dir, "results")); err != nil {
+			if err := runSurvey(c, cfg, filepath.Join(dir, "results"), true); err != nil {
 				return err
 			}
 			if !c.Bool("json") {

@@ -169,7 +169,7 @@ func measureAction(c *cli.Context) error {
 	if err != nil {
 		return usage(c, "--to: %v", err)
 	}
-	lights, info, err := survey.Open(path, sp, to, frame.Ciddor1996)
+	lights, info, err := survey.Open(path, sp, nil, to, frame.Ciddor1996)
 	if err != nil {
 		return err
 	}

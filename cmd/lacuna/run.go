@@ -59,18 +59,18 @@ Example: lacuna run survey.toml --out results --only "Lantern 1"`,
 			for _, n := range cfg.Notes {
 				fmt.Fprintln(c.App.ErrWriter, "note:", n)
 			}
-			return runSurvey(c, cfg, out)
+			return runSurvey(c, cfg, out, c.Bool("fresh"))
 		},
 	}
 }
 
 // runSurvey runs a survey into a folder and prints the summary.
-func runSurvey(c *cli.Context, cfg *config.Survey, out string) error {
+func runSurvey(c *cli.Context, cfg *config.Survey, out string, fresh bool) error {
 	if err := os.MkdirAll(out, 0o755); err != nil {
 		return fmt.Errorf("results folder: %w", err)
 	}
 	records, runErr := survey.RunInto(c.Context, cfg, out, survey.RunOptions{
-		Only: c.StringSlice("only"), Workers: c.Int("workers"), Fresh: c.Bool("fresh"), Command: os.Args[1:],
+		Only: c.StringSlice("only"), Workers: c.Int("workers"), Fresh: fresh, Command: os.Args[1:],
 		Progress: func(done, of int, name string) { progress(c, done, of, name) },
 		Warn:     func(s string) { fmt.Fprintln(c.App.ErrWriter, "note:", s) },
 	})
