@@ -133,7 +133,7 @@ func (p *page) widths(ws []measure.Width) {
 		width, tone := cell{text: printWidth(w).text()}, normal
 		if !w.Detected {
 			tone = warn
-			if w.Limit > 0 {
+			if w.Limit > 0 && !marginal(w) {
 				width = cell{"< " + printWidthLimit(w), warn}
 			}
 		}
@@ -167,7 +167,11 @@ func logCell(n budget.Number) cell {
 func remarks(w measure.Width) string {
 	var parts []string
 	if !w.Detected && w.Limit > 0 {
-		parts = append(parts, fmt.Sprintf("W = %s mÅ; %sσ limit over %s km/s with b = %s km/s", printWidth(w).text(), number(w.LimitSigma, decimalsOf(w.LimitSigma)),
+		first := "W = " + printWidth(w).text() + " mÅ"
+		if marginal(w) {
+			first = "< " + printWidthLimit(w) + " mÅ"
+		}
+		parts = append(parts, fmt.Sprintf("%s; %sσ limit over %s km/s with b = %s km/s", first, number(w.LimitSigma, decimalsOf(w.LimitSigma)),
 			number(w.LimitWidth, decimalsOf(w.LimitWidth)), number(w.LimitB, decimalsOf(w.LimitB))))
 	}
 	f := w.Flag | w.W.Flag

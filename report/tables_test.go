@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"math"
 	"strconv"
+	"strings"
 	"testing"
 
 	"lacuna/budget"
@@ -105,6 +106,16 @@ func TestMarginalWidth(t *testing.T) {
 	tab := Widths([]survey.Record{r})
 	if k, x := column(t, tab, "W_kind")[4], column(t, tab, "W_mA")[4]; k.Text != "marginal" || x != column(t, tab, "W_meas_mA")[4] {
 		t.Errorf("%v %v", k, x)
+	}
+	if got, want := figureWidth(*w), "W "+printWidth(*w).marked()+" mÅ (marginal)"; got != want {
+		t.Errorf("%q, want %q", got, want)
+	}
+	var b bytes.Buffer
+	if err := Summary(&b, []survey.Record{r}, Options{}); err != nil {
+		t.Fatal(err)
+	}
+	if !strings.Contains(b.String(), "< 9.5 mÅ; 3σ limit") || strings.Contains(b.String(), "K I 7698.96    < 9.5") { // the fixture's limit
+		t.Errorf("a marginal width in the summary:\n%s", b.String())
 	}
 }
 

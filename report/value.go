@@ -138,14 +138,24 @@ func bestColumn(w measure.Width) (logN budget.Number, apparent bool) {
 
 // figureWidth is the width as a figure's panel states it.
 func figureWidth(w measure.Width) string {
-	if !w.Detected && w.Limit > 0 {
+	if !w.Detected && w.Limit > 0 && !marginal(w) {
 		return "W < " + printWidthLimit(w) + " mÅ (" + number(w.LimitSigma, decimalsOf(w.LimitSigma)) + "σ)"
 	}
 	p := printWidth(w)
 	if p.kind == "none" {
 		return "W not measured"
 	}
-	return "W " + p.marked() + " mÅ"
+	s := "W " + p.marked() + " mÅ"
+	if marginal(w) {
+		s += " (marginal)"
+	}
+	return s
+}
+
+// marginal reports a line between 2σ and the threshold of detection: it shows its
+// value, because a limit alone would hide it.
+func marginal(w measure.Width) bool {
+	return !w.Detected && (w.Flag|w.W.Flag)&budget.Marginal != 0
 }
 
 // figureColumn is the column as a figure's panel states it.

@@ -114,7 +114,7 @@ func widthRow(r survey.Record, w measure.Width) []table.Cell {
 	switch {
 	case !meas.Set:
 		kind = table.Missing
-	case !w.Detected && w.W.Is(budget.Marginal) || !w.Detected && w.Flag&budget.Marginal != 0:
+	case marginal(w):
 		kind = table.Str("marginal")
 	case !w.Detected && w.Limit > 0:
 		kind, x, err = table.Str("upper"), limit, table.Missing
