@@ -11,6 +11,9 @@
 // Functions of numbers return NaN outside their domain. A slice of the wrong
 // length is the caller's bug and panics. Nothing here reads files or keeps
 // state, and nothing allocates.
+//
+// Equations of the DLMF (https://dlmf.nist.gov) outside its section 7.19 are
+// numbered from memory; the tests check each against long arithmetic.
 package voigt
 
 //go:generate go run ./internal/gentable -o nodes.go

@@ -12,7 +12,7 @@ import (
 const (
 	// ColumnPerTau is 1/(π rₑ c) in cm⁻² (km/s)⁻¹ Å: the apparent column density
 	// per unit velocity is N_a(v) = ColumnPerTau τ_a(v) / (f λ), λ in Å, v in km/s
-	// (Savage & Sembach 1991, ApJ 379, 245, eq. 8, where it is 3.768e14).
+	// (Savage & Sembach 1991, ApJ 379, 245, where it is 3.768e14; from memory).
 	ColumnPerTau = 1 / (math.Pi * atomic.ElectronRadius * atomic.C * 1e-8)
 
 	// ColumnPerWidth is 1/(π rₑ) in cm⁻² Å: a thin line of equivalent width W has
@@ -35,8 +35,8 @@ const (
 // H(a, 0) ≈ 1 − 2a/√π. Stimulated emission is neglected, so it is wrong for
 // hν ≲ kT (radio lines).
 //
-// Source: Savage & Sembach 1991, ApJ 379, 245 (the relation of τ and N); rₑ: CODATA
-// 2022, arXiv:2409.03787.
+// Source: Spitzer 1978, Physical Processes in the Interstellar Medium, ch. 3 (from
+// memory); rₑ: CODATA 2022, arXiv:2409.03787.
 func Tau0(n, f, wave, b float64) float64 {
 	if !(b > 0) {
 		return math.NaN()

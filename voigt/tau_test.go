@@ -195,7 +195,7 @@ func TestAddTauAllocations(t *testing.T) {
 }
 
 // Handbook numbers: N_a(v) = 3.768e14 τ/(fλ) (Savage & Sembach 1991, ApJ 379, 245) and
-// N = 1.130e20 W/(fλ²), W in Å (Spitzer 1978; from memory), to the digits printed.
+// N = 1.130e20 W/(fλ²), W in Å (Spitzer 1978); both from memory, to the digits printed.
 func TestConstants(t *testing.T) {
 	for _, tc := range []struct {
 		got  float64
