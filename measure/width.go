@@ -27,7 +27,7 @@ const (
 //   - Continuum: hᵀ Cov h, h_k = (1+z) Σ Δλᵢ Fᵢ/Cᵢ² φ_k(λᵢ), one shift for each
 //     principal factor of Cov, so that lines on one continuum share it exactly;
 //   - Placement: half the spread of W over the other placements of the continuum,
-//     as far as pixel noise does not explain it: √(h² − 4σ_h²), 0 if negative.
+//     as far as pixel noise does not explain it: √(h² − 2σ_h²), 0 if negative.
 //     The noise in the spread is already in the parts above;
 //   - ZeroLevel: W at z ± σ_z;
 //   - Fill: masked pixels (see fillIn).

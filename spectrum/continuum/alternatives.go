@@ -48,6 +48,9 @@ func (w *work) alternatives(m *Model) {
 	}
 	if d < Ceiling && w.highest(m.Pixels, d+1) > d {
 		add(fmt.Sprintf("degree %d", d+1), d+1, m.Pixels)
+		if d+2 <= Ceiling && w.o.Degree < 0 { // a curved continuum taken for flat shows only here
+			add(fmt.Sprintf("degree %d", d+2), d+2, m.Pixels)
+		}
 	}
 	if w.solve(slices.Clone(m.Coef), m.Pixels) != nil {
 		return

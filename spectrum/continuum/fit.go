@@ -27,9 +27,10 @@ import (
 // on the same candidates for every degree, rejected ones counted with χ² = Low²:
 // n/T is the number of independent pixels. The covariance of the coefficients is
 // M Σ Mᵀ, M = (AᵀWA)⁻¹AᵀW and Σ the noise as measured, so that W need only be
-// about right. Alt holds what else could have been chosen: one degree less
-// (unless the data exclude it at 3σ) and more, and windows of 0.8 and 1.2 times
-// the width; automatic regions lose the outer or the inner fifth of each side.
+// about right. Alt holds what else could have been chosen: one degree less (unless
+// the data exclude it at 3σ) and one more (also two more where the degree was
+// chosen here), and windows of 0.8 and 1.2 times the width; automatic regions lose
+// the outer or the inner fifth of each side.
 //
 // Method: Sembach & Savage 1992, ApJS 83, 147 (Legendre polynomials, formal
 // errors of the coefficients carried into the widths); Schwarz 1978, Ann.
@@ -118,7 +119,7 @@ func prepare(wave, flux, err []float64, mask []spectrum.Reason, o Options) (*wor
 		w.w[i] = 1 / (w.sig[i] * w.sig[i])
 		w.x[i] = m.x(wave[i])
 	}
-	w.b = newBasis(w.x, Ceiling+2)
+	w.b = newBasis(w.x, Ceiling+3)
 	return w, nil
 }
 

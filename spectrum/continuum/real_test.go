@@ -31,7 +31,7 @@ func TestAuditOfESOSpectra(t *testing.T) {
 		}
 		sum := n.Ratio * math.Sqrt(n.Tau(5))
 		t.Logf("%s: rms/σ %.3f, ρ %.3f, sums of 5 %.3f; %d stretches, %d pixels", name, n.Ratio, n.Rho, sum, len(parts), n.Pixels)
-		if !(math.Abs(n.Ratio-0.62) < 0.06) || !(math.Abs(n.Rho[0]-0.33) < 0.08) || !(math.Abs(sum-0.72) < 0.12) {
+		if !(math.Abs(n.Ratio-0.62) < 0.04) || !(math.Abs(n.Rho[0]-0.33) < 0.07) || !(math.Abs(sum-0.72) < 0.07) {
 			t.Errorf("%s: rms/σ %.3f (0.62), ρ₁ %.3f (0.33), sums of 5 %.3f (0.72)", name, n.Ratio, n.Rho[0], sum)
 		}
 	}
