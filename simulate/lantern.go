@@ -63,7 +63,7 @@ func Lantern() []Exposure {
 			}},
 			{V: 21.0, B: 4.0, Cols: []Col{{"Fe II", 13.75}, {"Zn II", 11.95}, {"Cr II", 12.30}, {"Si II", 14.40}}},
 		},
-		Lines: []StellarLine{{Wave: 2344.9, Depth: 0.12, VSini: 90}, {Wave: 2062.0, Depth: 0.08, VSini: 90}},
+		Lines: []StellarLine{{Wave: 2350.2, Depth: 0.12, VSini: 90}, {Wave: 2052.4, Depth: 0.08, VSini: 90}},
 	}
 	blue := Instrument{
 		R: 60000, Sampling: 2.6, First: 132, Medium: frame.Air, SN: 160, ReadNoise: 4, Blaze: true, Correlation: 0.33, ErrorScale: 1.3,

@@ -172,7 +172,7 @@ func (c *chain) growth(ws []measure.Width, s config.Sightline) ([]cog.Result, er
 		if points < 2 || points <= len(g.levels) || detected == 0 {
 			continue // N alone: the weak-line relation says as much
 		}
-		r, err := cog.FitLevels(g.name, g.levels, cog.Options{BMin: s.BRange[0], BMax: s.BRange[1]})
+		r, err := cog.FitLevels(g.name, g.levels, cog.Options{Key: s.Name, BMin: s.BRange[0], BMax: s.BRange[1], Sigma: s.LimitSigma})
 		if err != nil {
 			return nil, fmt.Errorf("curve of growth of %s: %w", g.name, err)
 		}

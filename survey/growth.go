@@ -114,7 +114,7 @@ func growthOf(table *atomic.Table, s config.GrowthSightline) ([]cog.Result, erro
 	}
 	var out []cog.Result
 	for _, g := range groups {
-		r, err := cog.FitLevels(g.name, g.levels, cog.Options{BMin: s.BRange[0], BMax: s.BRange[1]})
+		r, err := cog.FitLevels(g.name, g.levels, cog.Options{Key: s.Name, BMin: s.BRange[0], BMax: s.BRange[1]})
 		if err != nil {
 			return nil, fmt.Errorf("%s: %w", g.name, err)
 		}

@@ -39,6 +39,10 @@ Example: lacuna demo --out lantern`,
 			if err := os.MkdirAll(dir, 0o755); err != nil {
 				return err
 			}
+			// An earlier demo's results go with its spectra.
+			if err := os.RemoveAll(filepath.Join(dir, "results")); err != nil {
+				return err
+			}
 			if err := simulate.WriteLantern(dir); err != nil {
 				return err
 			}
