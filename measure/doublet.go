@@ -3,6 +3,7 @@ package measure
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"lacuna/budget"
 	"lacuna/voigt"
@@ -94,8 +95,11 @@ func CompareDoublet(strong, weak Width) Doublet {
 
 // plainLog is log₁₀ of a column with its shifts; that a line is saturated is what
 // the comparison is for, so limit flags are taken off.
+// plainLog is the log of an apparent column as it was seen: without flags of
+// saturation, and without the error for what it may hide, which is what δ measures.
 func plainLog(n budget.Number) budget.Number {
 	n.Flag &^= budget.Lower | budget.Saturated
+	n.Shifts = slices.DeleteFunc(slices.Clone(n.Shifts), func(s budget.Shift) bool { return s.Cause == budget.Structure })
 	return budget.Log10(n)
 }
 

@@ -21,13 +21,7 @@ func (w *work) depths(cover []float64) {
 func (w *work) flags() {
 	o := &w.out
 	if o.Saturated != "" {
-		o.Flag |= budget.Saturated
-		for _, n := range []*budget.Number{&o.AOD, &o.Linear} {
-			n.Flag |= budget.Saturated
-			if n.Flag&budget.Upper == 0 && !math.IsNaN(n.X) {
-				n.Flag |= budget.Lower
-			}
-		}
+		o.Saturate(o.Saturated)
 	}
 	if w.p.Line.Missing != "" {
 		o.Flag |= budget.NoStructure
@@ -38,6 +32,21 @@ func (w *work) flags() {
 	for _, n := range []*budget.Number{&o.W, &o.V, &o.AOD, &o.AODV, &o.AODB, &o.Linear} {
 		n.Flag |= carry
 		n.From = w.from()
+	}
+}
+
+// Saturate makes the columns of a line lower limits, for the reason why unless
+// there is one already.
+func (o *Width) Saturate(why string) {
+	if o.Saturated == "" {
+		o.Saturated = why
+	}
+	o.Flag |= budget.Saturated
+	for _, n := range []*budget.Number{&o.AOD, &o.Linear} {
+		n.Flag |= budget.Saturated
+		if n.Flag&budget.Upper == 0 && !math.IsNaN(n.X) {
+			n.Flag |= budget.Lower
+		}
 	}
 }
 

@@ -15,11 +15,16 @@ var fwhmPerB = 2 * math.Sqrt(math.Ln2)
 // A limit is LimitSigma·σ_W, with σ_W as for a width over a stated range of
 // velocity: twice the width at half maximum that the line would be observed with,
 // √(FWHM² + (2√ln2·b)²), about the middle of the window. It describes the data and
-// not the line, so the measured W does not enter.
+// not the line, so the measured W does not enter; but where W is marginal (2σ to
+// 3σ) the limit is not below W + 2σ.
 func (w *work) judge(cover []float64) {
 	o := &w.out
 	sigma := o.W.Err()
-	o.Detected = o.W.X >= detect*sigma
+	threshold := w.p.Detection
+	if threshold == 0 {
+		threshold = detect
+	}
+	o.Detected = o.W.X >= threshold*sigma
 	o.SigmaVE06 = w.vollmannEversberg(cover)
 	o.LimitWidth = w.p.LimitWidth
 	if o.LimitWidth == 0 {
@@ -46,7 +51,10 @@ func (w *work) judge(cover []float64) {
 	if o.W.X >= marginal*sigma {
 		o.W.Flag |= budget.Marginal
 		o.Flag |= budget.Marginal
-		w.note("marginal: W = %.2f ± %.2f mÅ; W + 2σ = %.2f mÅ", 1e3*o.W.X, 1e3*sigma, 1e3*(o.W.X+2*sigma))
+		if up := o.W.X + 2*sigma; !(o.Limit >= up) {
+			o.Limit = up
+			w.note("marginal: the limit is W + 2σ = %.2f mÅ", 1e3*up)
+		}
 	}
 }
 

@@ -23,6 +23,7 @@ type Piece struct {
 	AutoWindow      bool       // Window is the range to search; the used one is found
 	FWHM            float64    // of the instrument, km/s; 0 unknown
 	B               float64    // km/s, assumed where nothing is detected; 0: 1 for molecules, 2 for atoms
+	Detection       float64    // σ from which a line counts as detected; 0: 3
 	LimitWidth      float64    // km/s over which a limit is taken; 0: twice the observed FWHM
 	LimitSigma      float64    // of a limit; 0: 3
 	Zero            Zero       // zero level of the order
@@ -100,6 +101,7 @@ type Width struct {
 	B          float64     `json:"b"`                    // km/s, assumed where the data do not tell
 	Gamma      float64     `json:"gamma,omitempty"`      // s⁻¹, of the line
 	Split      float64     `json:"split,omitempty"`      // km/s, rms of its hyperfine and isotope structure
+	Hidden     float64     `json:"hidden,omitempty"`     // dex that one cloud of Tau0 would hide from the apparent optical depth
 	Tau0       float64     `json:"tau0"`                 // central optical depth that the weak-line column was judged by
 	Correction float64     `json:"correction"`           // dex, applied to the weak-line column
 	Floored    int         `json:"floored,omitempty"`    // points of the apparent optical depth below 2σ of zero flux

@@ -15,17 +15,93 @@ const perWidth = 1e8 / (math.Pi * atomic.ElectronRadius)
 // value: the correction is 0.045 dex there.
 const weakTau = 0.3
 
+// hiddenDex is the correction beyond which a column by optical depth is a lower
+// limit (common practice, no source).
+const hiddenDex = 0.10
+
+// opticalDepth estimates the central optical depth tau0 that the deepest part of
+// the line has behind the instrument, as one Gaussian component of Doppler
+// parameter b. Its b is what is left of the width of the deepest dip when the
+// instrument's is taken off in quadrature, not less than the b assumed: a dip no
+// wider than the instrument may hide a component as narrow as that. tau0 gives the
+// observed depth d,
+//
+//	b F(τ₀) = √π d √(b² + b_inst²),  F: the curve of growth,
+//
+// and is not less than the optical depth seen there.
+func (w *work) opticalDepth() (tau0, b float64) {
+	o := &w.out
+	wv := o.W.X / w.p.Line.Wave * atomic.C
+	peak, at := w.peak()
+	depth := -math.Expm1(-peak)
+	if !(depth > 0) {
+		return 0, o.B
+	}
+	inst := w.p.FWHM / fwhmPerB
+	obs := min(wv/(math.Sqrt(math.Pi)*depth), w.dipWidth(at, depth)/fwhmPerB)
+	b = max(o.B, math.Sqrt(max(0, obs*obs-inst*inst)))
+	dip := min(wv, math.Sqrt(math.Pi)*depth*math.Hypot(b, inst))
+	return min(max(growthInverse(dip/b), peak), 1e9), b
+}
+
+// dipWidth is the width (km/s) at half depth of the dip whose deepest pixel is at:
+// twice the narrower side, on means of three pixels.
+func (w *work) dipWidth(at int, depth float64) float64 {
+	side := func(step int) float64 {
+		last := 1 - depth
+		for i := at + step; i-1 >= 0 && i+1 < w.n; i += step {
+			f := (w.f[i-1] + w.f[i] + w.f[i+1]) / 3
+			if level := 1 - depth/2; f >= level {
+				part := 1.
+				if f > last {
+					part = (level - last) / (f - last)
+				}
+				return math.Abs(w.v[i-step] + part*(w.v[i]-w.v[i-step]) - w.v[at])
+			}
+			last = f
+		}
+		return math.Inf(1)
+	}
+	return 2 * min(side(1), side(-1))
+}
+
+// hidden says what the apparent optical depth may hide: the correction (dex) of
+// one component with tau0 and b behind the instrument, as an error of structure; a
+// lower limit beyond 0.10 dex.
+func (w *work) hidden(tau0, b float64) {
+	o := &w.out
+	if !(o.AOD.X > 0) {
+		return
+	}
+	seen := growth(tau0) // much narrower than the instrument
+	if r := w.p.FWHM / b; w.p.FWHM > 0 && r < 20 && tau0 < 1e3 {
+		seen = apparent(tau0, r)
+	}
+	o.Hidden = max(0, math.Log10(math.Sqrt(math.Pi)*tau0/seen))
+	if o.Hidden > hiddenDex {
+		if o.Saturated == "" {
+			o.Saturated = fmt.Sprintf("one cloud of b = %.2g km/s and optical depth %.2g would hide %.2f dex", b, tau0, o.Hidden)
+		}
+		return
+	}
+	if o.Hidden > 0 {
+		o.AOD.Shifts = append(o.AOD.Shifts, budget.Shift{Cause: budget.Structure, Key: w.structureKey(), D: o.AOD.X * (math.Pow(10, o.Hidden) - 1)})
+	}
+}
+
+// structureKey names what lines of one species share: the unseen structure of the
+// same gas.
+func (w *work) structureKey() string { return "structure:" + w.p.Line.Carrier() }
+
 // weakLine fills in the column by the weak-line relation,
 //
 //	N = 1.12958e20 W/(fλ²)  (W, λ in Å),
 //
-// exact for τ₀ → 0. It is a value only where the line is optically thin, τ₀ ≤ 0.3.
-// τ₀ is the larger of two: the optical depth seen at the deepest point (mean of
-// three pixels), and that of one Gaussian component with this W and
-// b = √(b_a² − b_inst²), not less than the b assumed. A value gets the correction of
-// that component, log √πτ₀/F(τ₀) ≤ 0.045 dex, and half of it as an error of
-// structure, since no one sees how the gas is spread within it. Beyond, N is a
-// lower limit. Without detection it is an upper limit, from Limit.
+// exact for τ₀ → 0. It is a value only where the line is optically thin, τ₀ ≤ 0.3
+// by opticalDepth. A value gets the correction of that component, log √πτ₀/F(τ₀) ≤
+// 0.045 dex, and half of it as an error of structure, since no one sees how the
+// gas is spread within it. Beyond, N is a lower limit. Without detection it is an
+// upper limit, from Limit.
 //
 // Sources: the relation, Spitzer 1978, Physical Processes in the Interstellar
 // Medium, §3.4 (from memory); the thresholds, common practice, no source.
@@ -44,24 +120,17 @@ func (w *work) weakLine() {
 		o.Linear = budget.Limit(n, k*o.Limit, o.LimitSigma)
 		return
 	}
-	b := o.B
-	if ba := o.AODB.X; !math.IsNaN(ba) {
-		inst := w.p.FWHM / fwhmPerB
-		b = max(b, math.Sqrt(max(0, ba*ba-inst*inst)))
-	}
-	tau := growthInverse(o.W.X / l.Wave * atomic.C / b)
-	o.Tau0 = min(max(tau, w.peak()), 1e9)
-	if !(o.Tau0 <= weakTau) {
+	tau0, b := w.opticalDepth()
+	o.Tau0 = tau0
+	w.hidden(tau0, b)
+	if !(tau0 <= weakTau) {
 		n.Flag |= budget.Lower | budget.Saturated
-		if o.Saturated == "" {
-			o.Saturated = fmt.Sprintf("optical depth %.2g at the centre", o.Tau0)
-		}
 		o.Linear = n
 		return
 	}
 	c := 1.0
-	if o.Tau0 > 0 {
-		c = math.Sqrt(math.Pi) * o.Tau0 / growth(o.Tau0)
+	if tau0 > 0 {
+		c = math.Sqrt(math.Pi) * tau0 / growth(tau0)
 	}
 	o.Correction = math.Log10(c)
 	was := n.X
@@ -70,21 +139,24 @@ func (w *work) weakLine() {
 		n.Shifts[i].D *= c
 	}
 	if c > 1 {
-		n.Shifts = append(n.Shifts, budget.Shift{Cause: budget.Structure, D: (n.X - was) / 2})
+		n.Shifts = append(n.Shifts, budget.Shift{Cause: budget.Structure, Key: w.structureKey(), D: (n.X - was) / 2})
 	}
 	o.Linear = n
 }
 
-// peak is the apparent optical depth of the deepest three pixels in a row.
-func (w *work) peak() float64 {
+// peak is the apparent optical depth of the deepest three pixels in a row, and the
+// middle one.
+func (w *work) peak() (tau float64, at int) {
 	least := 1.0
 	for i := 1; i+1 < w.n; i++ {
 		if w.v[i] < w.out.Window[0] || w.v[i] > w.out.Window[1] || w.bad[i-1] || w.bad[i] || w.bad[i+1] {
 			continue
 		}
-		least = min(least, (w.f[i-1]+w.f[i]+w.f[i+1])/3)
+		if f := (w.f[i-1] + w.f[i] + w.f[i+1]) / 3; f < least {
+			least, at = f, i
+		}
 	}
-	return -math.Log(max(least, 1e-6))
+	return -math.Log(max(least, 1e-6)), at
 }
 
 // saturation says why a detected line counts as saturated: two or more adjacent

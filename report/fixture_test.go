@@ -38,7 +38,7 @@ func measured(k sketch) measure.Width {
 	w := measure.Width{Line: k.name, Species: k.species, Level: k.level, Wave: k.wave, WaveAir: k.air, F: k.f,
 		Order: 1, File: "lantern-1.fits", Window: k.window, SNPixel: k.sn, SNElement: k.sn * 1.8,
 		LimitSigma: 3, NoiseRatio: 0.82, NoiseRho: []float64{0.31, 0.04, 0, 0, 0}, NoisePixels: 212,
-		NoiseBy: "error array, audited", Degree: 2, ContinuumBy: "Legendre, degree by BIC",
+		NoiseBy: "error array, audited", Degree: 2, ContinuumBy: "Legendre, degree by AICc",
 		Windows: [][2]float64{{-220, k.window[0] - 5}, {k.window[1] + 5, 220}},
 		Zero:    measure.Zero{Level: k.zero, Err: 0.002, By: "prior"}, Blends: k.blends}
 	if k.zero != 0 {

@@ -18,10 +18,19 @@ import (
 // columns fills a result's columns by every method, the adopted one of each
 // species, and the sums over levels.
 func (c *chain) columns(res *Result, s config.Sightline) error {
+	res.Doublets = c.doublets(res.Widths)
+	for _, d := range res.Doublets {
+		if d.Saturated {
+			for i := range res.Widths {
+				if w := &res.Widths[i]; w.Line == d.Strong || w.Line == d.Weak {
+					w.Saturate(fmt.Sprintf("doublet: the weaker line gives %.2f dex more", d.Delta.X))
+				}
+			}
+		}
+	}
 	for _, w := range res.Widths {
 		res.Columns = append(res.Columns, ofWidth(w)...)
 	}
-	res.Doublets = c.doublets(res.Widths)
 	for _, d := range res.Doublets {
 		if d.Refused == "" {
 			res.Columns = append(res.Columns, abundance.Column{

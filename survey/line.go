@@ -60,7 +60,7 @@ func (l Light) piece(t LineTask, table *atomic.Table) (measure.Piece, error) {
 	cut := l.Seg.Cut(frame.Wavelength(t.Line.Wave, lo), frame.Wavelength(t.Line.Wave, hi))
 	p := measure.Piece{
 		Line: t.Line, Wave: cut.Wave, Flux: cut.Flux, Err: cut.Err, Mask: cut.Mask,
-		Window: t.Window, AutoWindow: t.AutoWindow, B: t.B, LimitSigma: t.LimitSigma, LimitWidth: t.LimitWidth, File: l.Seg.Source.File, Order: l.Seg.Order,
+		Window: t.Window, AutoWindow: t.AutoWindow, B: t.B, Detection: t.Detection, LimitSigma: t.LimitSigma, LimitWidth: t.LimitWidth, File: l.Seg.Source.File, Order: l.Seg.Order,
 	}
 	if t.Zero != nil {
 		p.Zero = t.Zero(l.Seg.Source.File)
@@ -220,7 +220,8 @@ func (l Light) reach(t LineTask, table *atomic.Table) (lo, hi float64) {
 	if len(t.Continuum) > 0 {
 		lo, hi = t.Window[0], t.Window[1]
 		for _, c := range t.Continuum {
-			lo, hi = min(lo, c[0]), max(hi, c[1])
+			more := 0.1 * (c[1] - c[0]) // room for the placement with wider windows
+			lo, hi = min(lo, c[0]-more), max(hi, c[1]+more)
 		}
 		return lo, hi
 	}

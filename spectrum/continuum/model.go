@@ -41,7 +41,7 @@ type Model struct {
 	Pixels   []bool       // the pixels of the piece that were fitted
 	Sigma    []float64    // 1σ error of each pixel of the piece, as audited (tabulated × Ratio, or scatter)
 	Noise    Noise
-	By       string // "Legendre, degree by BIC", "user's column", …
+	By       string // "Legendre, degree by AICc", "user's column", …
 	Notes    []string
 
 	infl    []float64   // ∂Coef/∂flux, row-major len(Coef) × pixels; nil where Coef was not fitted
