@@ -29,6 +29,9 @@ const disagree = 2
 //  6. limits: lower limits give the highest, upper limits the lowest; our own
 //     non-detections are averaged as N ± σ first; both together an interval.
 //
+// A growth curve or a doublet correction that lies more than 2σ below a lower limit
+// is refused: one cloud was not enough.
+//
 // Every other column is compared with the adopted one. Where one differs by more
 // than 2σ of the difference, half the difference joins the error (cause
 // Disagreement), so that neither lies more than 2σ away, and Rule says so. Where
@@ -73,6 +76,7 @@ func byRule(cols []Column) Column {
 	if c, ok := byLines(cols); ok {
 		return c
 	}
+	var refusals []string
 	for _, m := range []struct{ method, why string }{
 		{MethodFit, "no unsaturated line: fit with the instrument's profile"},
 		{MethodDoublet, "no unsaturated line and no fit: optical depths of a doublet, corrected for saturation"},
@@ -82,9 +86,14 @@ func byRule(cols []Column) Column {
 	} {
 		var of []Column
 		for _, c := range cols {
-			if c.Method == m.method && isValue(c.LogN) {
-				of = append(of, c)
+			if c.Method != m.method || !isValue(c.LogN) {
+				continue
 			}
+			if why := refuted(c, cols); why != "" {
+				refusals = append(refusals, why)
+				continue
+			}
+			of = append(of, c)
 		}
 		if len(of) == 0 {
 			continue
@@ -95,9 +104,29 @@ func byRule(cols []Column) Column {
 		if len(of) > 1 {
 			best.Rule += ", the one with the smallest error"
 		}
+		best.Rule += strings.Join(refusals, "")
 		return widen(best, others(cols, of[:1]))
 	}
-	return byLimits(cols)
+	out := byLimits(slices.DeleteFunc(slices.Clone(cols), func(c Column) bool { return refuted(c, cols) != "" }))
+	out.Rule += strings.Join(refusals, "")
+	return out
+}
+
+// refuted says why a growth curve or a doublet correction cannot stand: a lower
+// limit lies above it by more than 2σ, as where several clouds are taken for one.
+func refuted(c Column, cols []Column) string {
+	if c.Method != MethodGrowth && c.Method != MethodDoublet {
+		return ""
+	}
+	for _, l := range cols {
+		if l.Method == c.Method || !l.LogN.Is(budget.Lower) {
+			continue
+		}
+		if n, d := conflict(c.LogN, l.LogN); d < 0 && n > disagree {
+			return fmt.Sprintf("; %s, %s, is refused: %s gives %s", named(c), show(c.LogN), named(l), show(l.LogN))
+		}
+	}
+	return ""
 }
 
 // byLines is step 1: unsaturated lines.

@@ -15,9 +15,13 @@ const perWidth = 1e8 / (math.Pi * atomic.ElectronRadius)
 // value: the correction is 0.045 dex there.
 const weakTau = 0.3
 
-// hiddenDex is the correction beyond which a column by optical depth is a lower
-// limit (common practice, no source).
-const hiddenDex = 0.10
+// The corrections beyond which a column by optical depth is a lower limit: where
+// the line's own width gives b, and where the b assumed does, so that the
+// correction is only what might be (common practice, no source).
+const (
+	hiddenDex  = 0.10
+	assumedDex = 0.25
+)
 
 // opticalDepth estimates the central optical depth tau0 that the deepest part of
 // the line has behind the instrument, as one Gaussian component of Doppler
@@ -37,21 +41,51 @@ func (w *work) opticalDepth() (tau0, b float64) {
 	if !(depth > 0) {
 		return 0, o.B
 	}
-	inst := w.p.FWHM / fwhmPerB
+	box := float64(2*w.half()+1) * w.pixel()
+	inst := math.Hypot(w.p.FWHM/fwhmPerB, box/math.Sqrt(6)) // b² = 2σ², σ² = box²/12
 	obs := min(wv/(math.Sqrt(math.Pi)*depth), w.dipWidth(at, depth)/fwhmPerB)
 	b = max(o.B, math.Sqrt(max(0, obs*obs-inst*inst)))
 	dip := min(wv, math.Sqrt(math.Pi)*depth*math.Hypot(b, inst))
 	return min(max(growthInverse(dip/b), peak), 1e9), b
 }
 
+// half is how many pixels on each side of one are averaged before its depth is
+// judged: half a resolution element in all, and three pixels at least.
+func (w *work) half() int {
+	if w.p.FWHM > 0 {
+		return max(1, int(w.p.FWHM/w.pixel()/4+0.5))
+	}
+	return 1
+}
+
+// mean is the mean of f over a pixel and half() on each side; false where one of
+// them is bad or missing.
+func (w *work) mean(i int) (float64, bool) {
+	h := w.half()
+	if i < h || i+h >= w.n {
+		return 0, false
+	}
+	s := 0.0
+	for k := i - h; k <= i+h; k++ {
+		if w.bad[k] {
+			return 0, false
+		}
+		s += w.f[k]
+	}
+	return s / float64(2*h+1), true
+}
+
 // dipWidth is the width (km/s) at half depth of the dip whose deepest pixel is at:
-// twice the narrower side, on means of three pixels.
+// twice the narrower side.
 func (w *work) dipWidth(at int, depth float64) float64 {
 	side := func(step int) float64 {
-		last := 1 - depth
-		for i := at + step; i-1 >= 0 && i+1 < w.n; i += step {
-			f := (w.f[i-1] + w.f[i] + w.f[i+1]) / 3
-			if level := 1 - depth/2; f >= level {
+		last, level := 1-depth, 1-depth/2
+		for i := at + step; ; i += step {
+			f, ok := w.mean(i)
+			if !ok {
+				return math.Inf(1)
+			}
+			if f >= level {
 				part := 1.
 				if f > last {
 					part = (level - last) / (f - last)
@@ -60,14 +94,13 @@ func (w *work) dipWidth(at int, depth float64) float64 {
 			}
 			last = f
 		}
-		return math.Inf(1)
 	}
 	return 2 * min(side(1), side(-1))
 }
 
 // hidden says what the apparent optical depth may hide: the correction (dex) of
 // one component with tau0 and b behind the instrument, as an error of structure; a
-// lower limit beyond 0.10 dex.
+// lower limit beyond 0.10 dex, or 0.25 dex where b is only assumed.
 func (w *work) hidden(tau0, b float64) {
 	o := &w.out
 	if !(o.AOD.X > 0) {
@@ -78,9 +111,13 @@ func (w *work) hidden(tau0, b float64) {
 		seen = apparent(tau0, r)
 	}
 	o.Hidden = max(0, math.Log10(math.Sqrt(math.Pi)*tau0/seen))
-	if o.Hidden > hiddenDex {
+	most, how := hiddenDex, "is likely to hide"
+	if b <= o.B {
+		most, how = assumedDex, "would hide"
+	}
+	if o.Hidden > most {
 		if o.Saturated == "" {
-			o.Saturated = fmt.Sprintf("one cloud of b = %.2g km/s and optical depth %.2g would hide %.2f dex", b, tau0, o.Hidden)
+			o.Saturated = fmt.Sprintf("one cloud of b = %.2g km/s and optical depth %.2g %s %.2f dex", b, tau0, how, o.Hidden)
 		}
 		return
 	}
@@ -144,15 +181,15 @@ func (w *work) weakLine() {
 	o.Linear = n
 }
 
-// peak is the apparent optical depth of the deepest three pixels in a row, and the
-// middle one.
+// peak is the apparent optical depth of the deepest part of the line (see mean),
+// and its middle pixel.
 func (w *work) peak() (tau float64, at int) {
 	least := 1.0
-	for i := 1; i+1 < w.n; i++ {
-		if w.v[i] < w.out.Window[0] || w.v[i] > w.out.Window[1] || w.bad[i-1] || w.bad[i] || w.bad[i+1] {
+	for i := range w.f {
+		if w.v[i] < w.out.Window[0] || w.v[i] > w.out.Window[1] {
 			continue
 		}
-		if f := (w.f[i-1] + w.f[i] + w.f[i+1]) / 3; f < least {
+		if f, ok := w.mean(i); ok && f < least {
 			least, at = f, i
 		}
 	}

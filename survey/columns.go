@@ -6,6 +6,8 @@ import (
 	"slices"
 	"strings"
 
+	"gonum.org/v1/gonum/stat/distuv"
+
 	"lacuna/abundance"
 	"lacuna/atomic"
 	"lacuna/budget"
@@ -44,6 +46,10 @@ func (c *chain) columns(res *Result, s config.Sightline) error {
 		return err
 	}
 	for _, g := range res.Growth {
+		if p := goodness(g); p < leastGoodness {
+			res.Warnings = append(res.Warnings, fmt.Sprintf("the growth curve of %s is not used: its lines do not lie on one curve (χ² = %.1f for %d, probability %.1g)", g.Species, g.Chi2, g.DOF, p))
+			continue
+		}
 		for i, level := range g.Levels {
 			res.Columns = append(res.Columns, abundance.Column{
 				Species: level, Element: element(level), Method: abundance.MethodGrowth, LogN: g.LogN[i],
@@ -188,6 +194,19 @@ func (c *chain) growth(ws []measure.Width, s config.Sightline) ([]cog.Result, er
 		out = append(out, r)
 	}
 	return out, nil
+}
+
+// leastGoodness is the probability of χ² below which a growth curve gives no
+// column (common practice, no source).
+const leastGoodness = 1e-3
+
+// goodness is the probability that χ² is as large by chance; 1 without degrees of
+// freedom.
+func goodness(g cog.Result) float64 {
+	if g.DOF < 1 {
+		return 1
+	}
+	return distuv.ChiSquared{K: float64(g.DOF)}.Survival(g.Chi2)
 }
 
 // Point is a measured width as the curve of growth wants it: shifts with a key

@@ -94,7 +94,7 @@ func Open(path string, sp config.Spectrum, at *spectrum.Coord, to frame.Kind, fo
 		}
 		l.Earth, l.Placed = seg.Motion()
 		if len(lights) == 0 {
-			info.Shifts = usedShift(found, seg.Shift)
+			info.Shifts = usedShift(found, seg.Shift, to)
 			info.R = l.R
 			switch {
 			case sp.R > 0:
@@ -133,12 +133,14 @@ func readOptions(sp config.Spectrum, at *spectrum.Coord, to frame.Kind) spectrum
 	return o
 }
 
-// usedShift lists the corrections found with a file: Done says what the file had
-// applied itself. One that was found but plays no part is left out.
-func usedShift(found, after []frame.Applied) []frame.Applied {
+// usedShift lists the corrections that brought a file's wavelengths to frame to,
+// with Done where the file had applied it itself. Others that were found play no
+// part and are left out.
+func usedShift(found, after []frame.Applied, to frame.Kind) []frame.Applied {
 	var out []frame.Applied
+	direct := slices.ContainsFunc(found, func(a frame.Applied) bool { return a.To == to })
 	for i, a := range found {
-		if a.Done || i < len(after) && after[i].Done {
+		if a.Done || i < len(after) && after[i].Done && (a.To == to || !direct) {
 			out = append(out, a)
 		}
 	}
