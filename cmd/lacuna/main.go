@@ -64,16 +64,17 @@ func usage(c *cli.Context, format string, a ...any) error {
 func newApp(stdout, stderr io.Writer) *cli.App {
 	cli.VersionPrinter = func(c *cli.Context) { fmt.Fprintln(c.App.Writer, "lacuna "+survey.Version()) }
 	app := &cli.App{
-		Name:                  "lacuna",
-		Usage:                 "stellar spectra → interstellar column densities and depletions",
-		Version:               survey.Version(),
-		Writer:                stdout,
-		ErrWriter:             stderr,
-		EnableBashCompletion:  true,
-		HideHelpCommand:       false,
-		Suggest:               false,
-		CustomAppHelpTemplate: appHelp,
-		ExitErrHandler:        func(*cli.Context, error) {}, // only main exits
+		Name:                      "lacuna",
+		Usage:                     "stellar spectra → interstellar column densities and depletions",
+		Version:                   survey.Version(),
+		Writer:                    stdout,
+		ErrWriter:                 stderr,
+		EnableBashCompletion:      true,
+		DisableSliceFlagSeparator: true, // "--continuum -250,-60" is one value
+		HideHelpCommand:           false,
+		Suggest:                   false,
+		CustomAppHelpTemplate:     appHelp,
+		ExitErrHandler:            func(*cli.Context, error) {}, // only main exits
 		OnUsageError: func(c *cli.Context, err error, _ bool) error {
 			return &usageError{err.Error() + "; see lacuna --help"}
 		},
