@@ -3,6 +3,7 @@ package measure
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"lacuna/atomic"
 	"lacuna/budget"
@@ -99,8 +100,8 @@ func (w *work) dipWidth(at int, depth float64) float64 {
 }
 
 // hidden says what the apparent optical depth may hide: the correction (dex) of
-// one component with tau0 and b behind the instrument, as an error of structure; a
-// lower limit beyond 0.10 dex, or 0.25 dex where b is only assumed.
+// one component with tau0 and b behind the instrument. Beyond 0.10 dex, or 0.25 dex
+// where b is only assumed, the line counts as saturated.
 func (w *work) hidden(tau0, b float64) {
 	o := &w.out
 	if !(o.AOD.X > 0) {
@@ -121,14 +122,26 @@ func (w *work) hidden(tau0, b float64) {
 		}
 		return
 	}
-	if o.Hidden > 0 {
-		o.AOD.Shifts = append(o.AOD.Shifts, budget.Shift{Cause: budget.Structure, Key: w.structureKey(), D: o.AOD.X * (math.Pow(10, o.Hidden) - 1)})
+}
+
+// ByDepth is the column that the apparent optical depth stands for, log₁₀ N: N_a
+// raised by half of what one cloud could hide behind the instrument (Hidden), with
+// that half as an error of structure, which lines of one species share. The truth
+// lies between N_a and N_a raised by all of it, as far as that one cloud goes.
+// A limit stays N_a. (Common practice, no source.)
+func (o Width) ByDepth() budget.Number {
+	n := budget.Log10(o.AOD)
+	if o.Hidden == 0 || n.Kind() != "value" {
+		return n
 	}
+	n.X += o.Hidden / 2
+	n.Shifts = append(slices.Clone(n.Shifts), budget.Shift{Cause: budget.Structure, Key: structureKey(atomic.Line{Species: o.Species, Level: o.Level}), D: o.Hidden / 2})
+	return n
 }
 
 // structureKey names what lines of one species share: the unseen structure of the
 // same gas.
-func (w *work) structureKey() string { return "structure:" + w.p.Line.Carrier() }
+func structureKey(l atomic.Line) string { return "structure:" + l.Carrier() }
 
 // weakLine fills in the column by the weak-line relation,
 //
@@ -176,7 +189,7 @@ func (w *work) weakLine() {
 		n.Shifts[i].D *= c
 	}
 	if c > 1 {
-		n.Shifts = append(n.Shifts, budget.Shift{Cause: budget.Structure, Key: w.structureKey(), D: (n.X - was) / 2})
+		n.Shifts = append(n.Shifts, budget.Shift{Cause: budget.Structure, Key: structureKey(w.p.Line), D: (n.X - was) / 2})
 	}
 	o.Linear = n
 }

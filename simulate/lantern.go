@@ -40,7 +40,7 @@ func Lantern() []Exposure {
 		},
 		Lines: []StellarLine{
 			{Wave: 3934.775, Depth: 0.10, VSini: 140}, {Wave: 3971.198, Depth: 2.2, VSini: 140},
-			{Wave: 5877.25, Depth: 0.55, VSini: 140}, {Wave: 4227.9, Depth: 0.04, VSini: 140},
+			{Wave: 5877.25, Depth: 0.55, VSini: 140},
 		},
 		Telluric: append(append([]TelluricLine{}, water...), oxygen...),
 	}

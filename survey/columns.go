@@ -91,7 +91,7 @@ func ofWidth(w measure.Width) []abundance.Column {
 	col := abundance.Column{Species: carrier(w), Element: element(w.Species), Line: w.Line}
 	weak, aod := col, col
 	weak.Method, weak.LogN = abundance.MethodWeak, budget.Log10(w.Linear)
-	aod.Method, aod.LogN = abundance.MethodAOD, budget.Log10(w.AOD)
+	aod.Method, aod.LogN = abundance.MethodAOD, w.ByDepth()
 	if !w.Detected {
 		return []abundance.Column{weak} // the limit; an optical depth of noise says no more
 	}
