@@ -13,6 +13,7 @@ import (
 
 	"lacuna/internal/disk"
 	"lacuna/internal/table"
+	"lacuna/report"
 )
 
 // one returns the single argument of a command.
@@ -26,7 +27,10 @@ func one(c *cli.Context, what string) (string, error) {
 	return "", usage(c, "one %s wanted, %d given (%s)", what, c.Args().Len(), strings.Join(c.Args().Slice(), " "))
 }
 
-// pair reads "-40,40".
+// maxVelocity bounds ranges of velocity, km/s, as it does in survey files.
+const maxVelocity = 30000
+
+// pair reads "-40,40", km/s.
 func pair(c *cli.Context, option, text string) ([2]float64, error) {
 	lo, hi, ok := strings.Cut(text, ",")
 	a, err1 := strconv.ParseFloat(strings.TrimSpace(lo), 64)
@@ -34,23 +38,26 @@ func pair(c *cli.Context, option, text string) ([2]float64, error) {
 	if !ok || err1 != nil || err2 != nil || !(a < b) {
 		return [2]float64{}, usage(c, "--%s %q is not two numbers, lower first, with a comma between (-40,40)", option, text)
 	}
+	if a < -maxVelocity || b > maxVelocity {
+		return [2]float64{}, usage(c, "--%s %q goes beyond ±%d km/s", option, text, maxVelocity)
+	}
 	return [2]float64{a, b}, nil
 }
 
-// width is the number of columns to print: the terminal's, at most 100.
-func width() int {
-	if w, _, err := term.GetSize(int(os.Stdout.Fd())); err == nil && w > 0 {
-		return max(80, min(w, 100))
+// textOptions says how to write text: colour and the width of the terminal where
+// the output is one, else 100 columns without colour.
+func textOptions(c *cli.Context) report.Options {
+	o := report.Options{Width: 100, ASCII: ascii()}
+	if f, ok := c.App.Writer.(*os.File); ok && term.IsTerminal(int(f.Fd())) {
+		o.Color = os.Getenv("NO_COLOR") == "" && os.Getenv("TERM") != "dumb"
+		if w, _, err := term.GetSize(int(f.Fd())); err == nil && w > 0 {
+			o.Width = max(80, min(w, 100))
+		}
 	}
-	return 100
+	return o
 }
 
-// colour reports whether to colour the standard output.
-func colour() bool {
-	return os.Getenv("NO_COLOR") == "" && os.Getenv("TERM") != "dumb" && term.IsTerminal(int(os.Stdout.Fd()))
-}
-
-// ascii reports whether the terminal's locale lacks UTF-8.
+// ascii reports whether the locale lacks UTF-8.
 func ascii() bool {
 	for _, v := range []string{"LC_ALL", "LC_CTYPE", "LANG"} {
 		if s := os.Getenv(v); s != "" {

@@ -1,7 +1,9 @@
 package main
 
 import (
+	"errors"
 	"fmt"
+	"io/fs"
 	"os"
 	"path/filepath"
 
@@ -10,6 +12,7 @@ import (
 	"lacuna/config"
 	"lacuna/internal/oops"
 	"lacuna/simulate"
+	"lacuna/survey"
 )
 
 func demoCommand() *cli.Command {
@@ -22,8 +25,8 @@ figures in DIR/results. Look at DIR/survey.toml for how the run was asked for.
 
 Example: lacuna demo --out lantern`,
 		Flags: []cli.Flag{
-			&cli.StringFlag{Name: "out", Value: "lantern", Usage: "folder to write, `DIR`; must not exist, or be an earlier demo"},
-			&cli.IntFlag{Name: "workers", Usage: "sightlines at a time `N`; else one a core"},
+			&cli.StringFlag{Name: "out", Value: "lantern", Usage: "write into folder `DIR`: a new one, or an earlier demo"},
+			&cli.IntFlag{Name: "workers", Usage: "run `N` sightlines at a time", DefaultText: "one a core"},
 			&cli.BoolFlag{Name: "json", Usage: "print the records as JSON"},
 		},
 		Action: func(c *cli.Context) error {
@@ -37,10 +40,9 @@ Example: lacuna demo --out lantern`,
 				}
 			}
 			if err := os.MkdirAll(dir, 0o755); err != nil {
-				return err
+				return fmt.Errorf("the demo's folder: %w", err)
 			}
-			// An earlier demo's results go with its spectra.
-			if err := os.RemoveAll(filepath.Join(dir, "results")); err != nil {
+			if err := removeResults(filepath.Join(dir, "results")); err != nil {
 				return err
 			}
 			if err := simulate.WriteLantern(dir); err != nil {
@@ -60,4 +62,20 @@ Example: lacuna demo --out lantern`,
 			return nil
 		},
 	}
+}
+
+// removeResults removes the results of an earlier demo, which go with its
+// spectra, unless a run is at work there.
+func removeResults(dir string) error {
+	if _, err := os.Stat(dir); errors.Is(err, fs.ErrNotExist) {
+		return nil
+	}
+	j, err := survey.OpenJournal(dir)
+	if err != nil {
+		return err
+	}
+	if err := j.Close(); err != nil {
+		return err
+	}
+	return os.RemoveAll(dir)
 }

@@ -14,7 +14,12 @@ import (
 func depleteCommand() *cli.Command {
 	var columns string
 	for _, col := range abundance.TableColumns {
-		columns += fmt.Sprintf("\n  %-16s %s", col[0], col[1])
+		for i, line := range fold(col[1], helpWidth-20) {
+			if i > 0 {
+				col[0] = ""
+			}
+			columns += fmt.Sprintf("\n  %-16s  %s", col[0], line)
+		}
 	}
 	return &cli.Command{
 		Name: "deplete", Usage: "depletions from a table of columns and hydrogen columns",
@@ -24,8 +29,8 @@ error of the solar scale, or says why an ion cannot give one. Columns:` + column
 
 Example: lacuna deplete columns.csv --scale asplund2021`,
 		Flags: []cli.Flag{
-			&cli.StringFlag{Name: "scale", Usage: "solar abundance scale `NAME`; required, none is taken silently"},
-			&cli.StringFlag{Name: "out", Usage: "write the depletions as ECSV to `FILE`"},
+			&cli.StringFlag{Name: "scale", Usage: "use solar abundance scale `NAME`; required, none is taken silently"},
+			&cli.StringFlag{Name: "out", Usage: "write the depletions into `FILE`, as ECSV"},
 			&cli.BoolFlag{Name: "json", Usage: "print the results as JSON"},
 		},
 		Action: func(c *cli.Context) error {
@@ -59,7 +64,7 @@ Example: lacuna deplete columns.csv --scale asplund2021`,
 				if i > 0 {
 					fmt.Fprintln(c.App.Writer)
 				}
-				if err := report.DepletionText(c.App.Writer, s.Name, s.Depletions, s.Hydrogen, textOptions()); err != nil {
+				if err := report.DepletionText(c.App.Writer, s.Name, s.Depletions, s.Hydrogen, textOptions(c)); err != nil {
 					return err
 				}
 			}

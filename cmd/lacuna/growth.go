@@ -22,10 +22,10 @@ b with errors and a confidence contour: one figure each, one table (growth.ecsv)
 
 Example: lacuna growth growth.toml --out growth-results`,
 		Flags: []cli.Flag{
-			&cli.StringFlag{Name: "out", Usage: "results folder `DIR`; else \"growth-results\" beside the batch file"},
-			&cli.BoolFlag{Name: "no-figures", Usage: "only the table"},
+			&cli.StringFlag{Name: "out", Usage: "write results into folder `DIR`", DefaultText: "\"growth-results\" beside the batch file"},
+			&cli.BoolFlag{Name: "no-figures", Usage: "write the table only"},
 			&cli.BoolFlag{Name: "dry-run", Usage: "print the fully resolved batch and stop"},
-			&cli.IntFlag{Name: "workers", Usage: "sightlines at a time `N`; else one a core"},
+			&cli.IntFlag{Name: "workers", Usage: "run `N` sightlines at a time", DefaultText: "one a core"},
 			&cli.BoolFlag{Name: "json", Usage: "print the results as JSON"},
 		},
 		Action: func(c *cli.Context) error {
@@ -65,7 +65,7 @@ Example: lacuna growth growth.toml --out growth-results`,
 				}
 				return runErr
 			}
-			if err := report.GrowthText(c.App.Writer, records, textOptions()); err != nil {
+			if err := report.GrowthText(c.App.Writer, records, textOptions(c)); err != nil {
 				return err
 			}
 			fmt.Fprintf(c.App.Writer, "\nResults: %s (growth.ecsv, figures/)\n", out)

@@ -32,20 +32,29 @@ Example: lacuna inspect lantern1_blue.fits`,
 				Audits   []report.Audit     `json:"audits"`
 			}
 			var all []inspected
+			var failed []error
 			for _, path := range c.Args().Slice() {
 				sp, err := spectrumOf(c, path)
 				if err != nil {
 					return err
 				}
 				s, audits, err := survey.Inspect(path, sp)
-				if err != nil {
-					return err
+				if err != nil { // the other files may still be looked at
+					failed = append(failed, err)
+					continue
 				}
 				var as []report.Audit
 				for _, a := range audits {
 					as = append(as, report.Audit(a))
 				}
 				all = append(all, inspected{path, s, as})
+			}
+			var err error
+			if failed != nil {
+				err = &survey.Failed{Of: c.Args().Len(), Errs: failed}
+			}
+			if len(all) == 0 {
+				return err
 			}
 			if c.Bool("json") {
 				for i := range all { // the pixels are in the file already
@@ -54,17 +63,20 @@ Example: lacuna inspect lantern1_blue.fits`,
 						seg.Wave, seg.Flux, seg.Err, seg.Continuum, seg.Mask = []float64{seg.Wave[0], seg.Wave[len(seg.Wave)-1]}, nil, nil, nil, nil
 					}
 				}
-				return report.JSON(c.App.Writer, all)
+				if err := report.JSON(c.App.Writer, all); err != nil {
+					return err
+				}
+				return err
 			}
 			for i, in := range all {
 				if i > 0 {
 					fmt.Fprintln(c.App.Writer)
 				}
-				if err := report.InspectText(c.App.Writer, in.File, in.Spectrum, in.Audits, textOptions()); err != nil {
+				if err := report.InspectText(c.App.Writer, in.File, in.Spectrum, in.Audits, textOptions(c)); err != nil {
 					return err
 				}
 			}
-			return nil
+			return err
 		},
 	}
 }

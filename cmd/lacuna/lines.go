@@ -23,11 +23,11 @@ and not yet seen in its source are marked.
 
 Example: lacuna lines --species "Ca II" --from 3900 --to 4000`,
 		Flags: []cli.Flag{
-			&cli.StringFlag{Name: "species", Usage: "only this `SPECIES`"},
-			&cli.StringFlag{Name: "from", Usage: "shortest wavelength in vacuum, `ANGSTROM`"},
-			&cli.StringFlag{Name: "to", Usage: "longest wavelength in vacuum, `ANGSTROM`"},
-			&cli.StringFlag{Name: "f-set", Value: "default", Usage: "set of oscillator strengths `NAME`; \"list\" lists the sets"},
-			&cli.StringFlag{Name: "line-table", Usage: "CSV `FILE` with transitions of your own"},
+			&cli.StringFlag{Name: "species", Usage: "list `SPECIES` only"},
+			&cli.StringFlag{Name: "from", Usage: "list from vacuum wavelength `ANGSTROM` on"},
+			&cli.StringFlag{Name: "to", Usage: "list up to vacuum wavelength `ANGSTROM`"},
+			&cli.StringFlag{Name: "f-set", Value: "default", Usage: "use `NAME` as set of oscillator strengths; \"list\" lists the sets"},
+			&cli.StringFlag{Name: "line-table", Usage: "add transitions of your own from `FILE`, CSV"},
 			&cli.BoolFlag{Name: "json", Usage: "print the rows as JSON"},
 		},
 		Action: func(c *cli.Context) error {
@@ -55,10 +55,13 @@ Example: lacuna lines --species "Ca II" --from 3900 --to 4000`,
 					return err
 				}
 			}
+			if lo > hi {
+				return usage(c, "--from %g is above --to %g", lo, hi)
+			}
 			rows := table.Lines()
 			if s := c.String("species"); s != "" {
 				if rows = table.Of(s); len(rows) == 0 {
-					return oops.Input("", "", fmt.Sprintf("no line of %q in the table", s), "it has "+strings.Join(nearestOr(s, table.Species()), ", "))
+					return oops.Input("", "--species", fmt.Sprintf("no line of %q in the table", s), "did you mean "+strings.Join(nearSpecies(s, table.Species()), ", ")+"?")
 				}
 			}
 			var out []atomic.Line
@@ -70,15 +73,25 @@ Example: lacuna lines --species "Ca II" --from 3900 --to 4000`,
 			if c.Bool("json") {
 				return report.JSON(c.App.Writer, out)
 			}
-			return report.LinesText(c.App.Writer, out, textOptions())
+			return report.LinesText(c.App.Writer, out, textOptions(c))
 		},
 	}
 }
 
-// nearestOr returns words like s, or all of them where none is.
-func nearestOr(s string, words []string) []string {
-	if near := oops.Nearest(s, words, 4); len(near) > 0 {
+// nearSpecies returns the species of an element or molecule so named, or species
+// written like it; all of them where there is none.
+func nearSpecies(s string, species []string) []string {
+	var of []string
+	for _, sp := range species {
+		if strings.HasPrefix(strings.ToLower(sp), strings.ToLower(s)+" ") {
+			of = append(of, sp)
+		}
+	}
+	if len(of) > 0 {
+		return of
+	}
+	if near := oops.Nearest(s, species, 4); len(near) > 0 {
 		return near
 	}
-	return words
+	return species
 }

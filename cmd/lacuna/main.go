@@ -9,6 +9,7 @@ import (
 	"io"
 	"os"
 	"os/signal"
+	"regexp"
 	"strings"
 	"syscall"
 
@@ -29,7 +30,15 @@ func main() {
 // gave, 1 for any other failure.
 func run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
 	app := newApp(stdout, stderr)
-	err := app.RunContext(ctx, reorder(app, args))
+	if len(args) > 1 && args[len(args)-1] == completeWord {
+		complete(stdout, app, args[1:len(args)-1])
+		return 0
+	}
+	app.Metadata = map[string]any{"args": args[1:]}
+	args, err := reorder(app, args)
+	if err == nil {
+		err = app.RunContext(ctx, args)
+	}
 	if err == nil {
 		return 0
 	}
@@ -69,18 +78,16 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Version:                   survey.Version(),
 		Writer:                    stdout,
 		ErrWriter:                 stderr,
-		EnableBashCompletion:      true,
 		DisableSliceFlagSeparator: true, // "--continuum -250,-60" is one value
-		HideHelpCommand:           false,
-		Suggest:                   false,
+		HideHelpCommand:           true, // ours is among the commands
 		CustomAppHelpTemplate:     appHelp,
 		ExitErrHandler:            func(*cli.Context, error) {}, // only main exits
 		OnUsageError: func(c *cli.Context, err error, _ bool) error {
-			return &usageError{err.Error() + "; see lacuna --help"}
+			return &usageError{flagError(c, err) + "; options stand after the command, see lacuna --help"}
 		},
 		Commands: []*cli.Command{
 			demoCommand(), newCommand(), runCommand(), measureCommand(), growthCommand(),
-			depleteCommand(), linesCommand(), inspectCommand(), completionCommand(),
+			depleteCommand(), linesCommand(), inspectCommand(), completionCommand(), helpCommand(),
 		},
 		Action: func(c *cli.Context) error {
 			if !c.Args().Present() {
@@ -90,7 +97,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		},
 	}
 	for _, cmd := range app.Commands {
-		cmd.CustomHelpTemplate = commandHelp
+		cmd.CustomHelpTemplate = helpText(cmd)
 		cmd.OnUsageError = func(c *cli.Context, err error, _ bool) error {
 			return &usageError{flagError(c, err) + "; see lacuna " + c.Command.Name + " --help"}
 		}
@@ -111,9 +118,19 @@ func unknownCommand(c *cli.Context) error {
 	return &usageError{fmt.Sprintf("there is no command %q; %s", word, fix)}
 }
 
-// flagError adds the nearest option to the library's message on an unknown one.
+// badValue is how the library tells of a value of the wrong type.
+var badValue = regexp.MustCompile(`^invalid value ("[^"]*"|\S+) for flag -([^:]+): `)
+
+// flagError puts the library's message on a wrong option into our words, with the
+// nearest option to an unknown one.
 func flagError(c *cli.Context, err error) string {
 	msg := err.Error()
+	if m := badValue.FindStringSubmatch(msg); m != nil {
+		return fmt.Sprintf("--%s %s is not a whole number", m[2], m[1])
+	}
+	if word, ok := strings.CutPrefix(msg, "flag needs an argument: "); ok {
+		return "--" + strings.TrimLeft(word, "-") + " needs a value"
+	}
 	if word, ok := strings.CutPrefix(msg, "flag provided but not defined: "); ok {
 		var names []string
 		for _, f := range c.Command.Flags {
@@ -132,10 +149,11 @@ func flagError(c *cli.Context, err error) string {
 
 // reorder moves options before the other arguments of a command, because the
 // library stops looking for options at the first argument. Everything after "--"
-// stays as it is.
-func reorder(app *cli.App, args []string) []string {
+// stays as it is. An option without its value, and one given twice that takes one
+// value, are mistakes that the library would not notice.
+func reorder(app *cli.App, args []string) ([]string, error) {
 	if len(args) < 3 {
-		return args
+		return args, nil
 	}
 	var cmd *cli.Command
 	at := 1
@@ -146,17 +164,22 @@ func reorder(app *cli.App, args []string) []string {
 		}
 	}
 	if cmd == nil {
-		return args
+		return args, nil
 	}
-	takesValue := map[string]bool{}
+	takesValue, many := map[string]bool{}, map[string]bool{}
 	for _, f := range cmd.Flags {
 		_, isBool := f.(*cli.BoolFlag)
+		_, isSlice := f.(*cli.StringSliceFlag)
 		for _, n := range f.Names() {
-			takesValue[n] = !isBool
+			takesValue[n], many[n] = !isBool, isSlice
 		}
+	}
+	mistake := func(format string, a ...any) error {
+		return &usageError{fmt.Sprintf(format, a...) + "; see lacuna " + cmd.Name + " --help"}
 	}
 	out := append([]string{}, args[:at+1]...)
 	var rest []string
+	seen := map[string]bool{}
 	for i := at + 1; i < len(args); i++ {
 		a := args[i]
 		switch {
@@ -165,11 +188,20 @@ func reorder(app *cli.App, args []string) []string {
 			i = len(args)
 		case strings.HasPrefix(a, "-") && a != "-":
 			out = append(out, a)
-			name := strings.TrimLeft(a, "-")
-			if !strings.Contains(name, "=") && takesValue[name] && i+1 < len(args) {
-				i++
-				out = append(out, args[i])
+			name, _, hasValue := strings.Cut(strings.TrimLeft(a, "-"), "=")
+			if seen[name] && takesValue[name] && !many[name] {
+				return nil, mistake("--%s is given twice", name)
 			}
+			seen[name] = true
+			if hasValue || !takesValue[name] {
+				continue
+			}
+			// A value may begin with "-", as negative numbers do, but not with "--".
+			if i+1 >= len(args) || strings.HasPrefix(args[i+1], "--") {
+				return nil, mistake("--%s needs a value", name)
+			}
+			i++
+			out = append(out, args[i])
 		default:
 			rest = append(rest, a)
 		}
@@ -177,7 +209,7 @@ func reorder(app *cli.App, args []string) []string {
 	if len(rest) > 0 {
 		out = append(append(out, "--"), rest...)
 	}
-	return out
+	return out, nil
 }
 
 const appHelp = `{{.Name}}: {{.Usage}}
@@ -193,14 +225,4 @@ code: 0 success, 2 a mistake in what was given, 1 any other failure. NO_COLOR is
 
 First steps: lacuna demo       runs the whole job on an invented survey
              lacuna new DIR    writes a commented survey file to start from
-`
-
-const commandHelp = `lacuna {{.Name}}: {{.Usage}}
-
-Usage: lacuna {{.Name}} {{.ArgsUsage}}
-{{if .Description}}
-{{.Description}}
-{{end}}
-Options:{{range .VisibleFlags}}
-  {{.}}{{end}}
 `

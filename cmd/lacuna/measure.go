@@ -17,16 +17,16 @@ import (
 // survey.
 func spectrumFlags() []cli.Flag {
 	return []cli.Flag{
-		&cli.StringFlag{Name: "medium", Usage: "wavelengths of the file: `air|vacuum`, where it does not say"},
-		&cli.StringFlag{Name: "frame", Usage: "velocity frame of the file, where it does not say: `topocentric|heliocentric|...`"},
-		&cli.StringFlag{Name: "correction", Usage: "velocity `KM/S` to add to reach the frame of the results, in place of the header's"},
-		&cli.StringFlag{Name: "unit", Usage: "unit of the wavelengths, where the file does not say: `Angstrom|nm|um`"},
-		&cli.StringFlag{Name: "columns", Usage: "columns to read, `WAVE,FLUX[,ERR]` by name or number from 1"},
-		&cli.IntFlag{Name: "hdu", Value: -1, Usage: "FITS unit `N` to read, 0 the primary one", DefaultText: "found"},
-		&cli.StringFlag{Name: "resolving-power", Usage: "λ/FWHM of the instrument, `R`, in place of the header's"},
+		&cli.StringFlag{Name: "medium", Usage: "wavelengths are in `air|vacuum`, where the file does not say"},
+		&cli.StringFlag{Name: "frame", Usage: "wavelengths are in velocity frame `NAME`, where the file does not say: topocentric, geocentric, heliocentric, barycentric, LSRK, LSRD or source"},
+		&cli.StringFlag{Name: "correction", Usage: "add velocity `KM/S` to reach the frame of the results, in place of the header's"},
+		&cli.StringFlag{Name: "unit", Usage: "wavelengths are in `Angstrom|nm|um`, where the file does not say"},
+		&cli.StringFlag{Name: "columns", Usage: "read columns `WAVE,FLUX[,ERR]`, by name or number from 1"},
+		&cli.IntFlag{Name: "hdu", Value: -1, Usage: "read FITS unit `N`, 0 being the primary one", DefaultText: "found"},
+		&cli.StringFlag{Name: "resolving-power", Usage: "take `R` as λ/FWHM of the instrument, in place of the header's"},
 		&cli.BoolFlag{Name: "normalised", Usage: "the continuum was divided out; needs --continuum-err"},
-		&cli.StringFlag{Name: "continuum-err", Usage: "relative 1σ error `X` of a continuum that is not our own"},
-		&cli.StringFlag{Name: "continuum-column", Usage: "`COLUMN` of the file that holds the continuum; needs --continuum-err"},
+		&cli.StringFlag{Name: "continuum-err", Usage: "relative 1σ error `X` of a continuum that was given"},
+		&cli.StringFlag{Name: "continuum-column", Usage: "take the continuum from `COLUMN` of the file; needs --continuum-err"},
 	}
 }
 
@@ -66,7 +66,7 @@ func spectrumOf(c *cli.Context, path string) (config.Spectrum, error) {
 		sp.Normalised = &yes
 	}
 	if (sp.Normalised != nil || sp.ContinuumColumn != "") && sp.ContinuumErr == 0 {
-		return sp, usage(c, "a continuum that is not our own needs its relative error: --continuum-err 0.01, say")
+		return sp, usage(c, "a continuum that was given needs its relative error: --continuum-err 0.01, say")
 	}
 	if h := c.Int("hdu"); h >= 0 {
 		sp.HDU = &h
@@ -95,18 +95,18 @@ file does not.
 
 Example: lacuna measure lantern1_red.fits --line "Na I 5889.95" --window -40,40`,
 		Flags: append([]cli.Flag{
-			&cli.StringSliceFlag{Name: "line", Usage: "the transition `NAME`; may be repeated"},
-			&cli.StringFlag{Name: "window", Usage: "integration range `LO,HI` in km/s"},
+			&cli.StringSliceFlag{Name: "line", Usage: "measure transition `NAME`; may be repeated"},
+			&cli.StringFlag{Name: "window", Usage: "integrate over `LO,HI` km/s"},
 			&cli.BoolFlag{Name: "auto-window", Usage: "--window is the range to search; the one used is found"},
-			&cli.StringSliceFlag{Name: "continuum", Usage: "continuum range `LO,HI` in km/s; may be repeated; else found"},
-			&cli.IntFlag{Name: "degree", Value: -1, Usage: "degree of the continuum `N`", DefaultText: "by information criterion"},
-			&cli.IntFlag{Name: "order", Usage: "the one order `N` to measure it in", DefaultText: "every order that holds it"},
-			&cli.StringFlag{Name: "to", Value: "heliocentric", Usage: "frame of the results: `heliocentric|barycentric|LSRK`"},
-			&cli.StringFlag{Name: "zero-level", Usage: "zero level and its error `LEVEL,ERR` over the continuum", DefaultText: "measured on black cores, else 0 ± 0.01"},
-			&cli.StringFlag{Name: "b", Usage: "Doppler parameter `KM/S` assumed for a limit"},
-			&cli.StringFlag{Name: "f-set", Value: "default", Usage: "set of oscillator strengths `NAME`"},
-			&cli.StringFlag{Name: "line-table", Usage: "CSV `FILE` with transitions of your own"},
-			&cli.StringFlag{Name: "figure", Usage: "write a figure to `FILE.svg`"},
+			&cli.StringSliceFlag{Name: "continuum", Usage: "fit the continuum on `LO,HI` km/s; may be repeated", DefaultText: "found"},
+			&cli.IntFlag{Name: "degree", Value: -1, Usage: "fit a continuum of degree `N`", DefaultText: "by information criterion"},
+			&cli.IntFlag{Name: "order", Usage: "measure in order `N` alone", DefaultText: "every order that holds it"},
+			&cli.StringFlag{Name: "to", Value: "heliocentric", Usage: "give velocities in frame `NAME`: heliocentric, barycentric or LSRK"},
+			&cli.StringFlag{Name: "zero-level", Usage: "zero level and its error, `LEVEL,ERR`, over the continuum", DefaultText: "measured on black cores, else 0 ± 0.01"},
+			&cli.StringFlag{Name: "b", Usage: "assume Doppler parameter `KM/S` for a limit", DefaultText: "2 for atoms, 1 for molecules"},
+			&cli.StringFlag{Name: "f-set", Value: "default", Usage: "use `NAME` as set of oscillator strengths"},
+			&cli.StringFlag{Name: "line-table", Usage: "add transitions of your own from `FILE`, CSV"},
+			&cli.StringFlag{Name: "figure", Usage: "write a figure into `FILE`, ending in .svg or .png"},
 			&cli.BoolFlag{Name: "json", Usage: "print the result as JSON"},
 		}, spectrumFlags()...),
 		Action: measureAction,
@@ -203,7 +203,7 @@ func measureAction(c *cli.Context) error {
 		if i > 0 {
 			fmt.Fprintln(c.App.Writer)
 		}
-		if err := report.WidthText(c.App.Writer, w, to, textOptions()); err != nil {
+		if err := report.WidthText(c.App.Writer, w, to, textOptions(c)); err != nil {
 			return err
 		}
 	}

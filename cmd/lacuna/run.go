@@ -3,7 +3,6 @@ package main
 import (
 	"errors"
 	"fmt"
-	"io"
 	"os"
 	"path/filepath"
 	"slices"
@@ -29,11 +28,11 @@ the last run are taken from the journal.
 
 Example: lacuna run survey.toml --out results --only "Lantern 1"`,
 		Flags: []cli.Flag{
-			&cli.StringFlag{Name: "out", Usage: "results folder `DIR`; else \"results\" beside the survey file"},
-			&cli.StringSliceFlag{Name: "only", Usage: "run only the sightline `NAME`; may be repeated"},
+			&cli.StringFlag{Name: "out", Usage: "write results into folder `DIR`", DefaultText: "\"results\" beside the survey file"},
+			&cli.StringSliceFlag{Name: "only", Usage: "run only sightline `NAME`; may be repeated"},
 			&cli.BoolFlag{Name: "dry-run", Usage: "print the fully resolved configuration and stop"},
 			&cli.BoolFlag{Name: "fresh", Usage: "measure again even what the journal has"},
-			&cli.IntFlag{Name: "workers", Usage: "sightlines at a time `N`; else one a core"},
+			&cli.IntFlag{Name: "workers", Usage: "run `N` sightlines at a time", DefaultText: "one a core"},
 			&cli.BoolFlag{Name: "json", Usage: "print the records as JSON"},
 		},
 		Action: func(c *cli.Context) error {
@@ -66,11 +65,14 @@ Example: lacuna run survey.toml --out results --only "Lantern 1"`,
 
 // runSurvey runs a survey into a folder and prints the summary.
 func runSurvey(c *cli.Context, cfg *config.Survey, out string, fresh bool) error {
+	if err := known(cfg, c.StringSlice("only")); err != nil {
+		return err
+	}
 	if err := os.MkdirAll(out, 0o755); err != nil {
 		return fmt.Errorf("results folder: %w", err)
 	}
 	records, runErr := survey.RunInto(c.Context, cfg, out, survey.RunOptions{
-		Only: c.StringSlice("only"), Workers: c.Int("workers"), Fresh: fresh, Command: os.Args[1:],
+		Only: c.StringSlice("only"), Workers: c.Int("workers"), Fresh: fresh, Command: c.App.Metadata["args"].([]string),
 		Progress: func(done, of int, name string) { progress(c, done, of, name) },
 		Warn:     func(s string) { fmt.Fprintln(c.App.ErrWriter, "note:", s) },
 	})
@@ -93,15 +95,30 @@ func runSurvey(c *cli.Context, cfg *config.Survey, out string, fresh bool) error
 		}
 		return runErr
 	}
-	if err := report.Summary(c.App.Writer, records, textOptions()); err != nil {
+	if err := report.Summary(c.App.Writer, records, textOptions(c)); err != nil {
 		return err
 	}
 	fmt.Fprintf(c.App.Writer, "\nResults: %s (widths.ecsv, columns.ecsv, depletions.ecsv, figures/)\n", out)
 	return runErr
 }
 
-func textOptions() report.Options {
-	return report.Options{Width: width(), Color: colour(), ASCII: ascii()}
+// known looks for names of sightlines before anything is written.
+func known(cfg *config.Survey, only []string) error {
+	var names []string
+	for _, s := range cfg.Sightlines {
+		names = append(names, s.Name)
+	}
+	for _, n := range only {
+		if slices.Contains(names, n) {
+			continue
+		}
+		fix := "the names are those of [[sightline]] and the catalogue"
+		if near := oops.Nearest(n, names, 1); len(near) > 0 {
+			fix = fmt.Sprintf("did you mean %q?", near[0])
+		}
+		return oops.Input(cfg.File, "--only", fmt.Sprintf("there is no sightline %q", n), fix)
+	}
+	return nil
 }
 
 func newCommand() *cli.Command {
@@ -140,59 +157,4 @@ Example: lacuna new my-survey`,
 			return nil
 		},
 	}
-}
-
-func completionCommand() *cli.Command {
-	return &cli.Command{
-		Name: "completion", Usage: "print a shell completion script",
-		ArgsUsage:   "bash|zsh|fish",
-		Description: `Example: lacuna completion bash > ~/.local/share/bash-completion/completions/lacuna`,
-		Action: func(c *cli.Context) error {
-			shell, err := one(c, "shell")
-			if err != nil {
-				return err
-			}
-			script, ok := completions[shell]
-			if shell == "fish" {
-				script, err = c.App.ToFishCompletion()
-				ok = true
-			}
-			if err != nil {
-				return err
-			}
-			if !ok {
-				return usage(c, "no completion for %q: bash, zsh or fish", shell)
-			}
-			_, err = io.WriteString(c.App.Writer, script)
-			return err
-		},
-	}
-}
-
-var completions = map[string]string{
-	"bash": `_lacuna() {
-	local IFS=$'\n'
-	COMPREPLY=( $(compgen -W "$("${COMP_WORDS[@]:0:COMP_CWORD}" --generate-bash-completion)" -- "${COMP_WORDS[COMP_CWORD]}") )
-	[ ${#COMPREPLY[@]} -gt 0 ] || COMPREPLY=( $(compgen -f -- "${COMP_WORDS[COMP_CWORD]}") )
-}
-complete -o filenames -F _lacuna lacuna
-`,
-	"zsh": `#compdef lacuna
-_lacuna() {
-	local -a opts
-	opts=("${(@f)$("${words[@]:0:#words[@]-1}" --generate-bash-completion)}")
-	if [[ -n "${opts[1]}" ]]; then _describe 'values' opts; else _files; fi
-}
-compdef _lacuna lacuna
-`,
-}
-
-// sorted returns the keys of a set in order.
-func sorted[T any](m map[string]T) []string {
-	var out []string
-	for k := range m {
-		out = append(out, k)
-	}
-	slices.Sort(out)
-	return out
 }
