@@ -48,6 +48,15 @@ func (h *HDU) Line(i int64) ([]float64, error) {
 	if err != nil {
 		return nil, err
 	}
+	if h.tiled != nil {
+		out, err := h.tiled.line(h, i)
+		if err == nil && (scale != 1 || zero != 0) {
+			for k, x := range out {
+				out[k] = zero + scale*x
+			}
+		}
+		return out, err
+	}
 	var blank *int64
 	if h.Bitpix > 0 && h.Has("BLANK") {
 		b, err := h.Int("BLANK", 0)

@@ -49,6 +49,12 @@ type HDU struct {
 	Cols   []Column // of a table, in the file's order
 	Err    error    // why it cannot be read, though its size is known
 
+	// Compression is how the tiles of a compressed image are packed (RICE_1 …), ""
+	// for any other HDU. Such an HDU is an image like any other.
+	Compression string
+
+	tiled *tiled
+
 	r          io.ReaderAt
 	data, size int64 // of the data unit, without padding
 	heap       int64 // start of the heap, from the start of the data
@@ -320,7 +326,9 @@ func (h *HDU) classify() {
 		}
 	case xt == "BINTABLE" || xt == "A3DTABLE":
 		h.Kind = Binary
-		h.Err = h.binaryColumns()
+		if h.Err = h.binaryColumns(); h.Err == nil && h.Bool("ZIMAGE") {
+			h.Err = h.tiles()
+		}
 	case xt == "TABLE":
 		h.Kind = Ascii
 		h.Err = h.asciiColumns()
