@@ -1,8 +1,11 @@
 package config
 
 import (
+	"errors"
 	"fmt"
 	"strings"
+
+	"lacuna/internal/oops"
 )
 
 func nth(what string, i int) string { return fmt.Sprintf("%s %d", what, i+1) }
@@ -100,8 +103,22 @@ func (l *loader) checkAdopt(where string, a *Adopt, s *Sightline) {
 	}
 }
 
+// told reports whether a mistake in this key, or in a key like it, was told.
+func (l *loader) told(key string) bool {
+	for _, err := range l.errs {
+		var m *oops.Mistake
+		if errors.As(err, &m) && (m.Where == key || strings.HasSuffix(m.Where, ": "+key) || m.Fix == "did you mean "+key+"?") {
+			return true
+		}
+	}
+	return false
+}
+
 func (l *loader) checkLine(where string, x *Sightline, ln *Line) {
 	if ln.Window == [2]float64{} {
+		if l.told("velocity") || l.told("window") {
+			return // only follows from that mistake
+		}
 		l.bad(at(where, "window"), "add window = [low, high] in km/s, or velocity to the sightline or [defaults]", "%s has no velocity range to measure over", ln.Name)
 		return
 	}

@@ -45,10 +45,10 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
 	var several *survey.Failed
 	if errors.As(err, &several) {
 		for _, f := range several.Errs {
-			fmt.Fprintf(stderr, "lacuna: %v\n", f)
+			tell(stderr, f)
 		}
 	} else {
-		fmt.Fprintf(stderr, "lacuna: %v\n", err)
+		tell(stderr, err)
 	}
 	var u *usageError
 	if errors.As(err, &u) || oops.IsInput(err) {
@@ -58,6 +58,13 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
 		return 2
 	}
 	return 1
+}
+
+// tell writes each mistake on a line of its own.
+func tell(w io.Writer, err error) {
+	for line := range strings.Lines(err.Error()) {
+		fmt.Fprintf(w, "lacuna: %s\n", strings.TrimRight(line, "\n"))
+	}
 }
 
 // A usageError is a mistake on the command line.

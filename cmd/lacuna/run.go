@@ -86,6 +86,9 @@ func runSurvey(c *cli.Context, cfg *config.Survey, out string, fresh bool) error
 	if err != nil {
 		return err
 	}
+	if failed != nil && !slices.ContainsFunc(all, func(r survey.Record) bool { return r.Status == "done" }) {
+		return runErr // there is nothing to show, and no table without a row
+	}
 	if err := report.WriteResults(out, all); err != nil {
 		return fmt.Errorf("writing results: %w", err)
 	}
