@@ -3,9 +3,7 @@ package survey
 import (
 	"context"
 	"fmt"
-	"runtime"
 	"slices"
-	"sync"
 
 	"lacuna/atomic"
 	"lacuna/cog"
@@ -23,59 +21,27 @@ func RunGrowth(ctx context.Context, cfg *config.Growth, workers int, progress fu
 	if err != nil {
 		return nil, err
 	}
-	if workers < 1 {
-		workers = runtime.GOMAXPROCS(0)
-	}
 	n := len(cfg.Sightlines)
 	records := make([]Record, n)
 	errs := make([]error, n)
-	next := make(chan int)
-	var wg sync.WaitGroup
-	var mu sync.Mutex
-	done := 0
-	for range min(workers, max(n, 1)) {
-		wg.Add(1)
-		go func() {
-			defer wg.Done()
-			for k := range next {
-				s := cfg.Sightlines[k]
-				records[k] = Record{Schema: Schema, Name: s.Name, Index: k, Status: "done"}
-				records[k].Result.FSet = cfg.FSet
-				records[k].Result.Growth, errs[k] = growthOf(table, s)
-				if errs[k] != nil {
-					errs[k] = at(cfg.File, s.Name, errs[k])
-					records[k].Status, records[k].Error = "failed", errs[k].Error()
-				}
-				mu.Lock()
-				done++
-				progress(done, n, s.Name)
-				mu.Unlock()
-			}
-		}()
-	}
-feed:
-	for k := range n {
-		select {
-		case next <- k:
-		case <-ctx.Done():
-			break feed
+	count := 0
+	err = each(ctx, n, workers, func(k int) {
+		s := cfg.Sightlines[k]
+		r := Record{Schema: Schema, Name: s.Name, Index: k, Status: statusDone}
+		r.Result.FSet = cfg.FSet
+		if r.Result.Growth, errs[k] = growthOf(table, s); errs[k] != nil {
+			errs[k] = at(cfg.File, s.Name, errs[k])
+			r.Status, r.Error = statusFailed, errs[k].Error()
 		}
+		records[k] = r
+	}, func(k int) {
+		count++
+		progress(count, n, cfg.Sightlines[k].Name)
+	})
+	if err != nil {
+		return nil, err
 	}
-	close(next)
-	wg.Wait()
-	if err := ctx.Err(); err != nil {
-		return nil, fmt.Errorf("stopped before the end: %w", err)
-	}
-	var failed []error
-	for _, e := range errs {
-		if e != nil {
-			failed = append(failed, e)
-		}
-	}
-	if failed != nil {
-		return records, &Failed{Of: n, Errs: failed}
-	}
-	return records, nil
+	return records, together(errs)
 }
 
 // growthOf fits each species of one sightline, or each group that shares one b.

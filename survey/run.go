@@ -4,9 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"runtime"
 	"runtime/debug"
-	"sync"
 
 	"lacuna/atomic"
 	"lacuna/config"
@@ -111,52 +109,19 @@ func Run(ctx context.Context, cfg *config.Survey, o Options) ([]Record, error) {
 	if err != nil {
 		return nil, err
 	}
-	workers := o.Workers
-	if workers < 1 {
-		workers = runtime.GOMAXPROCS(0)
-	}
 	records := make([]Record, len(todo))
 	errs := make([]error, len(todo))
-	next := make(chan int)
-	var wg sync.WaitGroup
-	var one sync.Mutex
-	for range min(workers, max(len(todo), 1)) {
-		wg.Add(1)
-		go func() {
-			defer wg.Done()
-			for k := range next {
-				records[k], errs[k] = c.record(cfg.Sightlines[todo[k]], todo[k], o.Have)
-				if o.Done != nil {
-					one.Lock()
-					o.Done(records[k])
-					one.Unlock()
-				}
-			}
-		}()
-	}
-feed:
-	for k := range todo {
-		select {
-		case next <- k:
-		case <-ctx.Done():
-			break feed
+	err = each(ctx, len(todo), o.Workers, func(k int) {
+		records[k], errs[k] = c.record(cfg.Sightlines[todo[k]], todo[k], o.Have)
+	}, func(k int) {
+		if o.Done != nil {
+			o.Done(records[k])
 		}
+	})
+	if err != nil {
+		return nil, fmt.Errorf("%w; the journal keeps what was done", err)
 	}
-	close(next)
-	wg.Wait()
-	if err := ctx.Err(); err != nil {
-		return nil, fmt.Errorf("stopped before the end: %w; the journal keeps what was done", err)
-	}
-	var failed []error
-	for _, e := range errs {
-		if e != nil {
-			failed = append(failed, e)
-		}
-	}
-	if failed != nil {
-		return records, &Failed{Of: len(todo), Errs: failed}
-	}
-	return records, nil
+	return records, together(errs)
 }
 
 // choose returns the indices of the sightlines to run.

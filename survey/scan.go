@@ -15,8 +15,11 @@ import (
 // maxLine bounds a journal line, bytes; a longer one is damage.
 const maxLine = 1 << 28
 
-// statusDone is the Status of a record whose sightline came through.
-const statusDone = "done"
+// The Status of a record: its sightline came through, or did not.
+const (
+	statusDone   = "done"
+	statusFailed = "failed"
+)
 
 const crcHead, crcTail = `{"crc":"`, `",`
 

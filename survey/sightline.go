@@ -11,17 +11,17 @@ import (
 
 // record runs one sightline; a panic in the chain is a bug and is not caught.
 func (c *chain) record(s config.Sightline, index int, have func(string) (Record, bool)) (Record, error) {
-	rec := Record{Schema: Schema, Name: s.Name, Index: index, Status: "done"}
+	rec := Record{Schema: Schema, Name: s.Name, Index: index, Status: statusDone}
 	inputs, err := c.inputs(s)
 	if err == nil {
 		rec.Key, err = Key(c.cfg, s, inputs, c.table)
 	}
 	if err != nil {
-		rec.Status, rec.Error = "failed", err.Error()
+		rec.Status, rec.Error = statusFailed, err.Error()
 		return rec, err
 	}
 	if have != nil {
-		if old, ok := have(rec.Key); ok && old.Status == "done" {
+		if old, ok := have(rec.Key); ok && old.Status == statusDone {
 			old.Index = index
 			return old, nil
 		}
@@ -29,7 +29,7 @@ func (c *chain) record(s config.Sightline, index int, have func(string) (Record,
 	rec.Result, err = c.sightline(s)
 	rec.Result.Inputs = inputs
 	if err != nil {
-		rec.Status, rec.Error = "failed", err.Error()
+		rec.Status, rec.Error = statusFailed, err.Error()
 	}
 	return rec, err
 }
