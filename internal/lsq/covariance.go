@@ -10,12 +10,11 @@ import (
 // to equal length, count as not determined: their errors would be rounding noise.
 const rankTol = 1e-11
 
-// covariance fills Cov, AtBound and Undetermined from the Jacobian at the
+// covariance fills Cov and Undetermined from the Jacobian at the
 // solution, by a singular value decomposition with scaled columns.
 func (s *Solution) covariance(ws *Workspace) {
 	n := len(s.X)
 	s.Cov = make([]float64, n*n)
-	s.AtBound = append([]int(nil), ws.at...)
 	k := len(ws.free)
 	if k == 0 {
 		return

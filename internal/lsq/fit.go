@@ -27,6 +27,7 @@ type Options struct {
 	Tol           float64 // converged when an iteration changes χ² by less, actual and predicted; 0: 1e-6
 	MaxIterations int     // 0: 200
 	Lambda        float64 // damping at the start, relative to the columns of the Jacobian; 0: 1e-3
+	NoCovariance  bool    // leave Cov and Undetermined empty: for callers who make their own
 }
 
 // A Stop is the reason why a fit ended.
@@ -115,7 +116,10 @@ func Fit(p Problem, x, lo, hi []float64, o Options, ws *Workspace) (Solution, er
 	s.X = append([]float64(nil), ws.now.x...)
 	s.Chi2 = ws.now.chi2
 	ws.hold(lo, hi)
-	s.covariance(ws)
+	s.AtBound = append([]int(nil), ws.at...)
+	if !o.NoCovariance {
+		s.covariance(ws)
+	}
 	return s, nil
 }
 
