@@ -14,7 +14,7 @@ func (s *Segment) Check() error {
 	if n == 0 {
 		return fmt.Errorf("segment %s: no pixels", s.Label)
 	}
-	if len(s.Flux) != n || len(s.Mask) != n || s.Err != nil && len(s.Err) != n || s.Continuum != nil && len(s.Continuum) != n {
+	if len(s.Flux) != n || len(s.Mask) != n || s.Err != nil && len(s.Err) != n || s.ErrLow != nil && (s.Err == nil || len(s.ErrLow) != n) || s.Continuum != nil && len(s.Continuum) != n {
 		return fmt.Errorf("segment %s: %d wavelengths, %d fluxes, %d errors, %d masks, %d continuum values", s.Label, n, len(s.Flux), len(s.Err), len(s.Mask), len(s.Continuum))
 	}
 	for i, w := range s.Wave {
@@ -29,6 +29,9 @@ func (s *Segment) Check() error {
 		}
 		if s.Err != nil && !(s.Err[i] > 0 && finite(s.Err[i])) {
 			return fmt.Errorf("segment %s: error %g at pixel %d counts as good", s.Label, s.Err[i], i+1)
+		}
+		if s.ErrLow != nil && !(s.ErrLow[i] > 0 && finite(s.ErrLow[i])) {
+			return fmt.Errorf("segment %s: lower error %g at pixel %d counts as good", s.Label, s.ErrLow[i], i+1)
 		}
 	}
 	return nil
@@ -46,6 +49,9 @@ func (s *Segment) Cut(lo, hi float64) Segment {
 	out.Wave, out.Flux, out.Mask = slices.Clone(s.Wave[i:j]), slices.Clone(s.Flux[i:j]), slices.Clone(s.Mask[i:j])
 	if s.Err != nil {
 		out.Err = slices.Clone(s.Err[i:j])
+	}
+	if s.ErrLow != nil {
+		out.ErrLow = slices.Clone(s.ErrLow[i:j])
 	}
 	if s.Continuum != nil {
 		out.Continuum = slices.Clone(s.Continuum[i:j])

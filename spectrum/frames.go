@@ -49,6 +49,7 @@ func drs(c cards) string {
 type clue struct {
 	ctype, ucd, column string
 	meta               map[string]string // of a text header: "medium", "frame"
+	z                  float64           // Doppler factor 1+z of a multispec line, already divided out
 }
 
 // decide sets medium, frame and corrections of a segment whose wavelengths are read.
@@ -141,7 +142,7 @@ func (r *reader) velocityFrame(s *Segment, c cards, k clue, in instrument) (fram
 			return frame.Geocentric, "HELCORR = " + v
 		}
 	}
-	if kind, by := dopcor(s, c); by != "" {
+	if kind, by := dopcor(s, c, k.z); by != "" {
 		return kind, by
 	}
 	if in.frame != frame.Unknown {
@@ -161,8 +162,9 @@ func (r *reader) velocityFrame(s *Segment, c cards, k clue, in instrument) (fram
 
 // dopcor reads the record of Doppler tasks, DOPCOR01 …: a velocity in km/s or a
 // redshift that was taken out of the wavelengths, λ_new = λ/(1+z). Where they add
-// up to more than the Earth can move, the frame is that of the source.
-func dopcor(s *Segment, c cards) (frame.Kind, string) {
+// up to more than the Earth can move, the frame is that of the source. The factor
+// of a multispec line (z) is the same record once more.
+func dopcor(s *Segment, c cards, own float64) (frame.Kind, string) {
 	z, found := 1.0, 0
 	for n := 1; n < 100; n++ {
 		words := strings.Fields(c.str(fmt.Sprintf("DOPCOR%02d", n)))
@@ -179,24 +181,16 @@ func dopcor(s *Segment, c cards) (frame.Kind, string) {
 		z *= 1 + x
 		found++
 	}
-	if found == 0 {
+	switch {
+	case found == 0 && own == 0:
 		return frame.Unknown, ""
+	case found == 0:
+		return doppler(s, c, frame.C*(1/(1+own)-1), "z of WAT2", "Doppler factor of the dispersion")
+	case own != 0 && math.Abs(z-(1+own)) > 1e-7:
+		s.note("DOPCOR says 1+z = %.9f, the dispersion in WAT2 %.9f: the latter was divided out", z, 1+own)
+		z = 1 + own
 	}
-	v := frame.C * (1/z - 1)
-	a := frame.Applied{Keyword: "DOPCOR01", V: v, Done: true, By: "record of a Doppler task"}
-	kind, by := frame.Unknown, "DOPCOR01 says that a velocity was taken out, not to which frame"
-	if math.Abs(v) > 35 {
-		kind, by = frame.Source, fmt.Sprintf("DOPCOR01: %+.1f km/s applied, more than the Earth moves", v)
-	}
-	for _, key := range solarKeys {
-		if w, ok := c.maybe(key.name); ok && math.Abs(w-v) < 0.05 {
-			kind, by = key.to, fmt.Sprintf("DOPCOR01 applied the %+.3f km/s of %s", v, key.name)
-		}
-	}
-	a.To = kind
-	s.Shift = append(s.Shift, a)
-	s.note("%s; the wavelengths were shifted by %+.3f km/s", by, v)
-	return kind, by
+	return doppler(s, c, frame.C*(1/z-1), "DOPCOR01", "record of a Doppler task")
 }
 
 // solarKeys are corrections to be added to a velocity at the telescope.

@@ -116,7 +116,7 @@ func (r *reader) image(h *fits.HDU, hdus []*fits.HDU) error {
 		if err := s.fill(px); err != nil {
 			return err
 		}
-		r.s.Segments = append(r.s.Segments, s)
+		r.keep(s)
 	}
 	if r.o.Row > 0 && int64(r.o.Row) > lines {
 		return h.Fail(fmt.Sprintf("there is no image line %d; it has %d", r.o.Row, lines), "choose another row")
@@ -155,6 +155,7 @@ func (r *reader) partner(h *fits.HDU, hdus []*fits.HDU, line int64, s *Segment, 
 // aline is one segment's lines in an image.
 type aline struct {
 	flux, err   int64 // from 0; err −1 none
+	aperture    int64 // line inside the plane of the flux
 	errKind, by string
 	label       string
 	order       int
@@ -251,45 +252,4 @@ func median(v []float64) float64 {
 	}
 	slices.Sort(v)
 	return v[len(v)/2]
-}
-
-// apertures reads an IRAF equispec image: line n of axis 2 is aperture n (APNUMn
-// = "aperture beam low high"; beam 0 is not the object), axis 3 the bands of
-// BANDIDn, of which "sigma" is the error.
-func (r *reader) apertures(h *fits.HDU, c cards) ([]aline, error) {
-	if len(h.Axes) < 2 || len(h.Axes) > 3 {
-		return nil, h.Fail(fmt.Sprintf("an equispec image of %d axes", len(h.Axes)), "say which lines: flux_col, err_col")
-	}
-	aps, bands := h.Axes[1], int64(1)
-	if len(h.Axes) == 3 {
-		bands = h.Axes[2]
-	}
-	if aps > 10000 || bands > 100 {
-		return nil, h.Fail(fmt.Sprintf("%d apertures and %d bands", aps, bands), "cut out what you need")
-	}
-	sigma := int64(-1)
-	for b := int64(1); b <= bands; b++ {
-		if strings.HasPrefix(strings.ToLower(c.str(fmt.Sprintf("BANDID%d", b))), "sigma") {
-			sigma = b - 1
-		}
-	}
-	var out []aline
-	for a := int64(0); a < aps; a++ {
-		l := aline{flux: a, err: -1, order: int(a) + 1}
-		if words := strings.Fields(c.str(fmt.Sprintf("APNUM%d", a+1))); len(words) > 1 {
-			if k, err := strconv.Atoi(words[0]); err == nil {
-				l.order = k
-			}
-			if words[1] == "0" || sameText(c.str(fmt.Sprintf("APID%d", a+1)), "sky") {
-				r.s.Notes = append(r.s.Notes, fmt.Sprintf("aperture %d is sky (APNUM%d, APID%d) and was left out", l.order, a+1, a+1))
-				continue
-			}
-		}
-		l.label = fmt.Sprintf("aperture %d", l.order)
-		if sigma >= 0 {
-			l.err, l.by = sigma*aps+a, fmt.Sprintf("BANDID%d", sigma+1)
-		}
-		out = append(out, l)
-	}
-	return out, nil
 }

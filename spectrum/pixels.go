@@ -11,6 +11,7 @@ import (
 // All slices that are not nil have the length of wave.
 type pixels struct {
 	wave, flux, err, cont []float64
+	errLow                []float64        // the lower of two errors
 	bad                   []bool           // by the file's own quality flags
 	gaps                  bool             // an error of 0 is always a gap in this family of files
 	place                 func(int) string // where pixel i stands in the file; nil: "pixel i+1"
@@ -34,6 +35,7 @@ func (s *Segment) fill(p pixels) error {
 	}
 	s.Wave, s.Flux, s.Err, s.Continuum = p.wave, p.flux, p.err, p.cont
 	s.maskErrors(p.gaps)
+	s.lowerErrors(p.errLow)
 	s.maskFiller()
 	if s.Good() == 0 {
 		s.note("none of the %d pixels is usable", len(s.Wave))
@@ -89,7 +91,7 @@ func (s *Segment) order(p *pixels) error {
 		}
 	}
 	if p.wave[0] > p.wave[n-1] {
-		for _, v := range [][]float64{p.wave, p.flux, p.err, p.cont} {
+		for _, v := range [][]float64{p.wave, p.flux, p.err, p.errLow, p.cont} {
 			slices.Reverse(v)
 		}
 		slices.Reverse(s.Mask)
@@ -183,6 +185,28 @@ func (s *Segment) maskErrors(gaps bool) {
 	}
 	if kept > 0 {
 		s.note("%s of error 0 in dark cores kept as zero counts, with the smallest error of %d neighbours", count(kept, "pixel"), 2*zeroReach)
+	}
+}
+
+// lowerErrors keeps the lower of two errors where it is a number; where it is not
+// the upper one stands in. Counts of zero have no room below them: the lower error
+// of Poisson statistics is 0 there, which would be an infinite weight.
+func (s *Segment) lowerErrors(v []float64) {
+	if v == nil || s.Err == nil {
+		return
+	}
+	stand := 0
+	for i, e := range v {
+		if !(e > 0) || !finite(e) {
+			v[i] = s.Err[i]
+			if !s.Mask[i].Bad() {
+				stand++
+			}
+		}
+	}
+	s.ErrLow = v
+	if stand > 0 {
+		s.note("%s without a lower error: the upper one is taken", count(stand, "pixel"))
 	}
 }
 

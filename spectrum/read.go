@@ -13,15 +13,16 @@ import (
 
 // The layouts.
 const (
-	layoutImage  = "image"
-	layoutSDP    = "ESO science data product"
-	layoutVector = "row of array cells"
-	layoutX1D    = "HST x1d"
-	layoutLogLam = "loglam table"
-	layoutRows   = "one row a pixel"
-	layoutText   = "text"
-	layoutCSV    = "CSV"
-	layoutECSV   = "ECSV"
+	layoutImage     = "image"
+	layoutMultispec = "IRAF multispec"
+	layoutSDP       = "ESO science data product"
+	layoutVector    = "row of array cells"
+	layoutX1D       = "HST x1d"
+	layoutLogLam    = "loglam table"
+	layoutRows      = "one row a pixel"
+	layoutText      = "text"
+	layoutCSV       = "CSV"
+	layoutECSV      = "ECSV"
 )
 
 // A reader is one file on its way to a Spectrum.
@@ -55,7 +56,11 @@ func read(c *fits.Content, o Options) (*Spectrum, error) {
 		return nil, err
 	}
 	if len(r.s.Segments) == 0 {
-		return nil, oops.Input(c.Name, "", "no segment of it holds a spectrum", "choose an HDU and its columns")
+		what := "no segment of it holds a spectrum"
+		if n := len(r.s.Notes); n > 0 {
+			what += ": " + strings.Join(r.s.Notes[:min(n, 3)], "; ")
+		}
+		return nil, oops.Input(c.Name, "", what, "choose an HDU and its columns")
 	}
 	if !slices.ContainsFunc(r.s.Segments, func(s Segment) bool { return s.Good() > 0 }) {
 		return nil, oops.Input(c.Name, "", "no pixel is usable by its flux, error and quality", "look at the quality flags, or choose other columns")
@@ -197,54 +202,16 @@ func (r *reader) unread(h *fits.HDU) (string, func() error) {
 		return what, func() error { return h.Fail(what+" is not read yet", fix) }
 	}
 	switch {
-	case h.Bool("ZIMAGE"):
-		return not("a tile-compressed image", "unpack it with funpack")
 	case sameText(h.Name(), "MEHI") || h.Col("STARTPIX") >= 0 && h.Col("DELTAW") >= 0:
 		return not("the IUE high-dispersion layout (MXHI)", "save wavelength, flux and quality of its orders as text")
 	case sameText(h.Name(), "MELO"):
 		return not("the IUE low-dispersion layout (MXLO)", "save wavelength, flux and sigma as text")
-	case strings.Contains(r.wat(h, 0), "system=multispec") || sameText(c.str("CTYPE1"), "MULTISPE"):
-		what := "the IRAF multispec layout"
-		if gap := watGap(&h.Header); gap != "" {
-			return what, func() error { return h.Fail(gap+": the wavelength solution cannot be read", "fetch the file again") }
-		}
-		return not(what, "export its orders as text or as linear images")
+	case r.isMultispec(h):
+		return layoutMultispec, func() error { return r.multispec(h) }
 	case c.match(func(k string) bool { return strings.HasSuffix(k, " DRS CAL TH COEFF LL0") }) != "" && len(h.Axes) == 2 && h.Axes[1] > 1:
 		return not("the e2ds layout of the DRS family", "use the s1d file, or save the orders as text")
 	case c.has("WV_0_01"):
 		return not("the KOA polynomial image", "use the extracted table")
 	}
 	return "", nil
-}
-
-// wat joins the cards WATn_001 … of an IRAF header: pieces of 68 characters,
-// whose trailing blanks FITS drops.
-func (r *reader) wat(h *fits.HDU, axis int) string {
-	var b strings.Builder
-	for i := 1; ; i++ {
-		c, ok := h.Lookup(fmt.Sprintf("WAT%d_%03d", axis, i))
-		if !ok {
-			return strings.TrimSpace(b.String())
-		}
-		fmt.Fprintf(&b, "%-68s", c.Value)
-	}
-}
-
-// watGap names the first card that is missing from a numbered run.
-func watGap(h *fits.Header) string {
-	last := 0
-	for _, c := range h.Cards {
-		if n, err := strconv.Atoi(strings.TrimPrefix(c.Key, "WAT2_")); err == nil && strings.HasPrefix(c.Key, "WAT2_") {
-			last = max(last, min(n, 999))
-		}
-	}
-	for i := 1; i < last; i++ {
-		if key := fmt.Sprintf("WAT2_%03d", i); !h.Has(key) {
-			if i == 1 {
-				return key + " is missing"
-			}
-			return fmt.Sprintf("%s is missing between WAT2_%03d and WAT2_%03d", key, i-1, i+1)
-		}
-	}
-	return ""
 }

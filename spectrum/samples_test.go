@@ -51,7 +51,7 @@ type expected struct {
 }
 
 // Layouts that are recognised but not read yet.
-var unread = []string{"05_", "06_", "10_", "14_", "16_", "20_"}
+var unread = []string{"10_", "14_", "20_"}
 
 func isUnread(file string) bool {
 	return slices.ContainsFunc(unread, func(p string) bool { return strings.HasPrefix(file, p) })

@@ -35,12 +35,13 @@ type Spectrum struct {
 type Coord struct{ RA, Dec float64 }
 
 // A Segment is one order, stripe or detector of one exposure, wavelengths
-// ascending. After reading, Wave is in the file's medium and frame (converted to
+// ascending and without gaps between pixels. After reading, Wave is in the file's medium and frame (converted to
 // Å); ToVacuum and ToFrame convert it.
 type Segment struct {
 	Order           int       // order or aperture number; index+1 where the file has none
 	Label           string    // "order 87", "FUVA"
 	Wave, Flux, Err []float64 // Err is nil when the file has none
+	ErrLow          []float64 // 1σ towards smaller flux where the file has two errors (Err is then the upper one), else nil
 	Continuum       []float64 // the file's own continuum column, or nil
 	Mask            []Reason
 	Medium          frame.Medium

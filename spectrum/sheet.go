@@ -213,6 +213,6 @@ func (r *reader) textSegment(sh *sheet, p picked, names []string, a, b int, labe
 	if err := s.fill(px); err != nil {
 		return err
 	}
-	r.s.Segments = append(r.s.Segments, s)
+	r.keep(s)
 	return nil
 }

@@ -218,7 +218,7 @@ func (r *reader) add(h *fits.HDU, s *Segment, px pixels, p picked) error {
 	if err := s.fill(px); err != nil {
 		return err
 	}
-	r.s.Segments = append(r.s.Segments, *s)
+	r.keep(*s)
 	return nil
 }
 

@@ -75,8 +75,8 @@ func (r *reader) x1d(h *fits.HDU) error {
 			r.s.Notes = append(r.s.Notes, s.Label+" has no pixels (NELEM = 0) and was left out")
 			continue
 		}
-		if h.Col("ERROR_LOWER") >= 0 && p.err == h.Col("ERROR") && p.err >= 0 {
-			s.note("errors are the upper ones (ERROR, not ERROR_LOWER)")
+		if px.errLow != nil {
+			s.note("two errors: ERROR is the upper one, ERROR_LOWER the lower")
 		}
 		if err := r.add(h, &s, px, p); err != nil {
 			return err
@@ -96,6 +96,9 @@ func (r *reader) x1dRow(h *fits.HDU, p picked, row, serious int64) (px pixels, e
 		return v
 	}
 	px.wave, px.flux, px.err = read(p.wave), read(p.flux), read(p.err)
+	if p.err >= 0 && p.err == h.Col("ERROR") {
+		px.errLow = read(h.Col("ERROR_LOWER"))
+	}
 	dq, weight, elems := read(h.Col("DQ")), read(h.Col("DQ_WGT")), read(h.Col("NELEM"))
 	var user []float64
 	if p.mask >= 0 {
@@ -111,7 +114,7 @@ func (r *reader) x1dRow(h *fits.HDU, p picked, row, serious int64) (px pixels, e
 		}
 		n = int(elems[0])
 	}
-	for _, v := range []*[]float64{&px.wave, &px.flux, &px.err, &dq, &weight, &user} {
+	for _, v := range []*[]float64{&px.wave, &px.flux, &px.err, &px.errLow, &dq, &weight, &user} {
 		if *v == nil {
 			continue
 		}
