@@ -88,6 +88,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		DisableSliceFlagSeparator: true, // "--continuum -250,-60" is one value
 		HideHelpCommand:           true, // ours is among the commands
 		CustomAppHelpTemplate:     appHelp,
+		Flags:                     []cli.Flag{cli.HelpFlag},
 		ExitErrHandler:            func(*cli.Context, error) {}, // only main exits
 		OnUsageError: func(c *cli.Context, err error, _ bool) error {
 			return &usageError{flagError(c, err) + "; options stand after the command, see lacuna --help"}

@@ -102,7 +102,7 @@ Example: lacuna measure lantern1_red.fits --line "Na I 5889.95" --window -40,40`
 			&cli.IntFlag{Name: "degree", Value: -1, Usage: "fit a continuum of degree `N`", DefaultText: "by information criterion"},
 			&cli.IntFlag{Name: "order", Usage: "measure in order `N` alone", DefaultText: "every order that holds it"},
 			&cli.StringFlag{Name: "to", Value: "heliocentric", Usage: "give velocities in frame `NAME`: heliocentric, barycentric or LSRK"},
-			&cli.StringFlag{Name: "zero-level", Usage: "zero level and its error, `LEVEL,ERR`, over the continuum", DefaultText: "measured on black cores, else 0 ± 0.01"},
+			&cli.StringFlag{Name: "zero-level", Usage: "zero level and its error, `LEVEL,ERR`, over the continuum", DefaultText: "measured on black cores, else 0,0.01"},
 			&cli.StringFlag{Name: "b", Usage: "assume Doppler parameter `KM/S` for a limit", DefaultText: "2 for atoms, 1 for molecules"},
 			&cli.StringFlag{Name: "f-set", Value: "default", Usage: "use `NAME` as set of oscillator strengths"},
 			&cli.StringFlag{Name: "line-table", Usage: "add transitions of your own from `FILE`, CSV"},
