@@ -27,18 +27,21 @@ type Options struct {
 	Tol           float64 // converged when an iteration changes χ² by less, actual and predicted; 0: 1e-6
 	MaxIterations int     // 0: 200
 	Lambda        float64 // damping at the start, relative to the columns of the Jacobian; 0: 1e-3
+	Slow          float64 // stop as Creeping when 20 iterations together lower χ² by less; 0: never
 	NoCovariance  bool    // leave Cov and Undetermined empty: for callers who make their own
 }
 
 // A Stop is the reason why a fit ended.
 type Stop string
 
-// The reasons to stop. Only after Converged is X a minimum.
+// The reasons to stop. Only after Converged is X a minimum; after Creeping it is near
+// one in χ², but may be far in X.
 const (
 	Converged Stop = "converged"
 	Cornered  Stop = "converged with every parameter at a bound"
 	Stuck     Stop = "no step lowers χ², though the model predicts one"
 	Limit     Stop = "iteration limit reached"
+	Creeping  Stop = "χ² hardly falls any more, along a valley that the points do not close"
 )
 
 // A Solution is the end of a fit.
@@ -148,7 +151,15 @@ func (ws *Workspace) iterate(p Problem, lo, hi []float64, o Options, s *Solution
 	lambda, nu := o.Lambda, 2.0
 	again := math.Inf(1)         // χ² when the damping was last set back,
 	back, promised := false, 0.0 // and what the step after that was predicted to gain
+	const lap = 20
+	before := ws.now.chi2 // χ² at the last lap
 	for s.Iterations < o.MaxIterations {
+		if s.Iterations > 0 && s.Iterations%lap == 0 {
+			if before-ws.now.chi2 < o.Slow {
+				return Creeping
+			}
+			before = ws.now.chi2
+		}
 		s.Iterations++
 		ws.hold(lo, hi)
 		if len(ws.free) == 0 {

@@ -339,6 +339,16 @@ func TestStops(t *testing.T) {
 	if err != nil || got.Stop != lsq.Limit || got.OK() || got.Iterations != 3 {
 		t.Errorf("%+v, %v", got, err)
 	}
+	// A valley without an end: r = e^−x falls for ever, by a constant part a step
+	valley := fn{2, func(x, r []float64, jac *mat.Dense) {
+		r[0], r[1] = math.Exp(-x[0]), 0
+		jac.SetRow(0, []float64{-r[0]})
+		jac.SetRow(1, []float64{0})
+	}}
+	got, err = lsq.Fit(valley, []float64{0}, nil, nil, lsq.Options{Tol: 1e-300, Slow: 1e-3}, nil)
+	if err != nil || got.Stop != lsq.Creeping || got.OK() || got.Iterations > 40 || !(got.Chi2 < 1e-9) {
+		t.Errorf("%+v, %v", got, err)
+	}
 	// Derivatives of the wrong sign promise what never comes.
 	wrong := fn{2, func(x, r []float64, jac *mat.Dense) {
 		rosenbrock(x, r, jac)

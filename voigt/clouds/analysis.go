@@ -67,7 +67,7 @@ func (f *Fitter) fill(design *mat.Dense, x []float64) {
 	at, lin := 0, len(x)
 	for _, w := range f.wins {
 		w.absorption(f.comps, x, true)
-		w.project(w.left[:w.rows()-w.k], false)
+		w.project(w.resid)
 		w.derivatives()
 		for i := range w.rows() {
 			dst := design.RawRowView(at + i)

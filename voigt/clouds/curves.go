@@ -26,7 +26,7 @@ func (f *Fitter) Curves(k int, x []float64) (Curves, error) {
 		f.comps[i].set(x)
 	}
 	w.absorption(f.comps, x, false)
-	if w.project(w.left[:w.rows()-w.k], false) == nil {
+	if !w.project(w.resid) {
 		return c, w.bad("mask less, or lower the degree of the continuum", "the continuum cannot be found")
 	}
 	// All pixels, masked ones too: the same sub-grid step and width with other rows.

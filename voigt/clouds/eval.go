@@ -32,13 +32,16 @@ func (f *Fitter) Eval(x, r []float64, jac *mat.Dense) {
 	at := 0
 	for _, w := range f.wins {
 		w.absorption(f.comps, x, true)
-		rows := w.rows() - w.k
-		d := w.project(r[at:at+rows], true)
-		if d == nil {
+		rows := w.rows()
+		if !w.project(r[at : at+rows]) {
 			r[at] = math.NaN()
 			return
 		}
-		src := d.RawMatrix()
+		w.derivatives()
+		if w.k > 0 {
+			w.proj.Jacobian(w.d)
+		}
+		src := w.d.RawMatrix()
 		for i := range rows {
 			dst := raw.Data[(at+i)*raw.Stride : (at+i)*raw.Stride+n]
 			clear(dst)
@@ -182,43 +185,31 @@ func extent(a, y float64) float64 {
 	return u + 0.3
 }
 
-// project solves for the linear parameters and sets r to the residuals that they
-// leave. It returns the derivatives of r, a row a residual and a column each of
-// w.cols; nil where the linear parameters cannot be found.
-func (w *window) project(r []float64, slopes bool) *mat.Dense {
+// project solves for the linear parameters and sets r (a row each) to the residuals
+// that they leave. It reports false where they cannot be found.
+func (w *window) project(r []float64) bool {
 	n := len(w.pix)
 	w.columns()
 	w.lost = false
-	y := w.resid
-	copy(y, w.data)
+	copy(r, w.data)
 	if w.deg == NoContinuum { // the part without linear parameters
 		for i, t := range w.flux {
-			y[i] = w.fixedPart(t) * w.inv[i]
+			r[i] = w.fixedPart(t) * w.inv[i]
 		}
-		w.noise.whiten(y[:n], 1)
+		w.noise.whiten(r[:n], 1)
 		for i := range n {
-			y[i] = w.data[i] - y[i]
+			r[i] = w.data[i] - r[i]
 		}
 	}
 	if w.k > 0 {
 		if w.proj.Factor(w.a) != nil {
 			w.lost = true
-			return nil
+			return false
 		}
-		w.proj.Coef(w.lin, y)
-		w.proj.Residuals(r, y)
-	} else {
-		copy(r, y)
+		w.proj.Coef(w.lin, r)
+		w.proj.Residuals(r)
 	}
-	if !slopes {
-		return w.d
-	}
-	w.derivatives()
-	if w.k == 0 {
-		return w.d
-	}
-	w.proj.Jacobian(w.jt, w.d)
-	return w.jt
+	return true
 }
 
 // fixedPart is the model of a normalised window less its free zero level, for

@@ -216,7 +216,7 @@ func named(what, key string) string {
 // connect finds which lines of a window each comp absorbs in, and the columns of its
 // Jacobian.
 func (f *Fitter) connect() error {
-	n := len(f.start)
+	n, spare := len(f.start), 0
 	for _, w := range f.wins {
 		for i := range w.in.Lines {
 			l := &w.in.Lines[i]
@@ -251,10 +251,11 @@ func (f *Fitter) connect() error {
 			w.width = w.column(f.params.all[i].value.terms[0].j)
 		}
 		w.linear()
-		f.rows += w.rows() - w.k
+		f.rows += w.rows()
+		spare += w.rows() - w.k
 	}
 	f.rows += len(f.priors)
-	if f.rows < n {
+	if spare+len(f.priors) < n {
 		pixels := 0
 		linear := 0
 		for _, w := range f.wins {

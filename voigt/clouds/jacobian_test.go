@@ -99,7 +99,7 @@ func TestJacobian(t *testing.T) {
 	design := [][]float64{}
 	for _, w := range f.wins {
 		w.absorption(f.comps, x, true)
-		w.project(w.left[:w.rows()-w.k], false)
+		w.project(w.resid)
 		w.derivatives()
 		for i := range w.pix {
 			row := make([]float64, n)

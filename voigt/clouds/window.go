@@ -37,15 +37,15 @@ type window struct {
 	shift  float64 // its value, km/s
 
 	// The linear part: continuum and zero level.
-	k        int // columns
-	deg      int
-	zeroCol  int // column of the zero level, −1: none
-	zeroRow  bool
-	knownZ   float64 // added light that is known
-	lin      []float64
-	lost     bool // the last evaluation failed
-	a, d, jt *mat.Dense
-	proj     lsq.Projector
+	k       int // columns
+	deg     int
+	zeroCol int // column of the zero level, −1: none
+	zeroRow bool
+	knownZ  float64 // added light that is known
+	lin     []float64
+	lost    bool // the last evaluation failed
+	a, d    *mat.Dense
+	proj    lsq.Projector
 
 	// At the current point.
 	tau, trans []float64 // on the sub-grid
@@ -54,7 +54,6 @@ type window struct {
 	flux       []float64 // of each row: transmission after the instrument
 	slope      []stretch // of each column: ∂τ/∂x on the sub-grid
 	resid      []float64
-	left       []float64 // residuals of chi2
 	fluxW      []float64 // ∂ flux/∂ ln width
 }
 
@@ -208,13 +207,12 @@ func (w *window) whitenData(flux []float64) {
 // linear prepares the projection once the columns are known.
 func (w *window) linear() {
 	m := w.rows()
-	w.resid, w.left = make([]float64, m), make([]float64, m)
+	w.resid = make([]float64, m)
 	w.flux, w.fluxW = make([]float64, len(w.pix)), make([]float64, len(w.pix))
 	w.d = mat.NewDense(m, max(1, len(w.cols)), nil)
 	w.lin = make([]float64, w.k)
 	if w.k > 0 {
 		w.a = mat.NewDense(m, w.k, nil)
-		w.jt = mat.NewDense(m-w.k, max(1, len(w.cols)), nil)
 	}
 	w.slope = make([]stretch, len(w.cols))
 }
