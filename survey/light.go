@@ -139,7 +139,11 @@ func readOptions(sp config.Spectrum, at *spectrum.Coord, to frame.Kind) spectrum
 func usedShift(found, after []frame.Applied, to frame.Kind) []frame.Applied {
 	var out []frame.Applied
 	direct := slices.ContainsFunc(found, func(a frame.Applied) bool { return a.To == to })
+	own := func(a frame.Applied) bool { return a.Keyword == "user" && !a.Done } // takes the place of the header's
 	for i, a := range found {
+		if !a.Done && !own(a) && slices.ContainsFunc(found, own) {
+			continue
+		}
 		if a.Done || i < len(after) && after[i].Done && (a.To == to || !direct) {
 			out = append(out, a)
 		}

@@ -47,7 +47,7 @@ func works(t testing.TB, args ...string) string {
 }
 
 // untidy are signs of a number or a word that went wrong on its way to the page.
-var untidy = regexp.MustCompile(`NaN|[+-]?Inf\b|%!|\b0 ± 0\b|± 0\.0*(\s|$)|\b1 (lines|orders|pixels|sightlines|parts)\b|<nil>|\bUNKNOWN\b|--? km/s`)
+var untidy = regexp.MustCompile(`NaN|[+-]?Inf\b|%!|(^|\s)0 ± 0(\s|$)|± 0\.0*(\s|$)|\b1 (lines|orders|pixels|sightlines|parts)\b|<nil>|\bUNKNOWN\b|--? km/s`)
 
 // readable checks a text for escape codes, its width, and untidy numbers.
 func readable(t testing.TB, args []string, text string) {

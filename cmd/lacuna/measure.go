@@ -135,6 +135,9 @@ func measureAction(c *cli.Context) error {
 		if err != nil {
 			return err
 		}
+		if !task.AutoWindow && r[0] < task.Window[1] && r[1] > task.Window[0] {
+			return usage(c, "--continuum %s reaches into the window %s", text, c.String("window"))
+		}
 		task.Continuum = append(task.Continuum, r)
 	}
 	if task.Degree < -1 || task.Degree > 5 {

@@ -74,7 +74,9 @@ func runSurvey(c *cli.Context, cfg *config.Survey, out string, fresh bool) error
 	records, runErr := survey.RunInto(c.Context, cfg, out, survey.RunOptions{
 		Only: c.StringSlice("only"), Workers: c.Int("workers"), Fresh: fresh, Command: c.App.Metadata["args"].([]string),
 		Progress: func(done, of int, name string) { progress(c, done, of, name) },
-		Warn:     func(s string) { fmt.Fprintln(c.App.ErrWriter, "note:", s) },
+		Warn: func(s string) {
+			fmt.Fprintf(c.App.ErrWriter, "note: %s: %s\n", filepath.Join(out, survey.JournalName), s)
+		},
 	})
 	var failed *survey.Failed
 	if runErr != nil && !errors.As(runErr, &failed) {

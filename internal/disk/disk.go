@@ -3,7 +3,10 @@ package disk
 
 import (
 	"bufio"
+	"errors"
+	"fmt"
 	"io"
+	"io/fs"
 	"os"
 	"path/filepath"
 )
@@ -14,7 +17,11 @@ func AtomicWrite(path string, write func(io.Writer) error) (err error) {
 	dir := filepath.Dir(path)
 	f, err := os.CreateTemp(dir, ".lacuna-*")
 	if err != nil {
-		return err
+		var p *fs.PathError
+		if errors.As(err, &p) {
+			err = p.Err // the name of the temporary file helps nobody
+		}
+		return fmt.Errorf("writing %s: %w", path, err)
 	}
 	defer func() {
 		if err != nil {
@@ -39,7 +46,11 @@ func AtomicWrite(path string, write func(io.Writer) error) (err error) {
 		return err
 	}
 	if err = os.Rename(f.Name(), path); err != nil {
-		return err
+		var l *os.LinkError
+		if errors.As(err, &l) {
+			err = l.Err
+		}
+		return fmt.Errorf("writing %s: %w", path, err)
 	}
 	if d, e := os.Open(dir); e == nil {
 		d.Sync() // best effort: not every file system syncs folders

@@ -1,0 +1,133 @@
+package main
+
+import (
+	"bytes"
+	"encoding/json"
+	"encoding/xml"
+	"errors"
+	"io"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+
+	"lacuna/internal/table"
+	"lacuna/survey"
+)
+
+// wellFormed reads a result file by its ending: tables with rows, one JSON
+// document, drawings that a browser would take.
+func wellFormed(t *testing.T, path string) {
+	t.Helper()
+	b := []byte(read(t, path))
+	switch filepath.Ext(path) {
+	case ".ecsv":
+		if _, err := table.Read(path); err != nil {
+			t.Errorf("%v", err)
+		}
+	case ".json":
+		if !json.Valid(b) {
+			t.Errorf("%s is not JSON", path)
+		}
+	case ".jsonl":
+		for i, line := range bytes.Split(bytes.TrimSuffix(b, []byte("\n")), []byte("\n")) {
+			if !json.Valid(line) {
+				t.Errorf("%s: line %d is not JSON", path, i+1)
+			}
+		}
+	case ".svg":
+		drawing(t, path, b)
+	}
+}
+
+func drawing(t *testing.T, path string, b []byte) {
+	t.Helper()
+	root := ""
+	for d := xml.NewDecoder(bytes.NewReader(b)); ; {
+		tok, err := d.Token()
+		if errors.Is(err, io.EOF) {
+			break
+		}
+		if err != nil {
+			t.Errorf("%s: %v", path, err)
+			return
+		}
+		if e, ok := tok.(xml.StartElement); ok && root == "" {
+			root = e.Name.Local
+		}
+	}
+	if root != "svg" {
+		t.Errorf("%s: a drawing of <%s>", path, root)
+	}
+}
+
+func TestDemo(t *testing.T) {
+	dir := demo(t)
+	if demoSaid.err != "" {
+		t.Errorf("standard error of the demo:\n%s", demoSaid.err)
+	}
+	readable(t, []string{"demo"}, demoSaid.out)
+	for _, w := range []string{"Lantern 1", "Lantern 2", "Lantern 3", "3 sightlines: 3 done, 0 failed",
+		"Results: " + filepath.Join(dir, "results"), filepath.Join(dir, "truth.ecsv"), "trace ion: needs ionization correction"} {
+		if !strings.Contains(demoSaid.out, w) {
+			t.Errorf("the demo does not say %q", w)
+		}
+	}
+	have := map[string]bool{}
+	for _, name := range names(t, dir) {
+		have[name] = true
+		wellFormed(t, filepath.Join(dir, name))
+	}
+	for _, name := range []string{"survey.toml", "truth.ecsv", "results/widths.ecsv", "results/columns.ecsv", "results/depletions.ecsv",
+		"results/growth.ecsv", "results/manifest.json", "results/journal.jsonl",
+		"results/figures/Lantern_1-lines.svg", "results/figures/Lantern_2-lines.svg", "results/figures/Lantern_3-lines.svg"} {
+		if !have[name] {
+			t.Errorf("the demo did not write %s", name)
+		}
+	}
+	var m survey.Manifest
+	if err := json.Unmarshal([]byte(read(t, filepath.Join(dir, "results", "manifest.json"))), &m); err != nil {
+		t.Fatal(err)
+	}
+	if got := strings.Join(m.Command, " "); got != "demo --out "+dir {
+		t.Errorf("the manifest's command is %q", got)
+	}
+	if len(m.Inputs) != 5 || len(m.Rows) == 0 || m.Sightlines != 3 || len(m.Failed) != 0 {
+		t.Errorf("manifest: %d inputs, %d rows of data tables, %d sightlines, %v failed", len(m.Inputs), len(m.Rows), m.Sightlines, m.Failed)
+	}
+}
+
+// A second demo takes the place of the first; a folder with anything else in it
+// is left alone, and so is one in which a run is at work.
+func TestDemoAgain(t *testing.T) {
+	dir := filepath.Join(t.TempDir(), "a folder", "lantern")
+	first := lacuna(t, "demo", "--out", dir, "--json")
+	if first.code != 0 || first.err != "" {
+		t.Fatalf("exit code %d\n%s", first.code, first.err)
+	}
+	var records []survey.Record
+	if err := json.Unmarshal([]byte(first.out), &records); err != nil || len(records) != 3 {
+		t.Fatalf("%d records, %v", len(records), err)
+	}
+	stray := write(t, filepath.Join(dir, "results", "figures"), "old.svg", "")
+	j, err := survey.OpenJournal(filepath.Join(dir, "results"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	mistake(t, 2, []string{"another run works here", "--out"}, "demo", "--out", dir)
+	if err := j.Close(); err != nil {
+		t.Fatal(err)
+	}
+	if _, err := os.Stat(stray); err != nil {
+		t.Error("a demo that was refused removed results")
+	}
+
+	other := t.TempDir()
+	write(t, other, "thesis.tex", "mine")
+	mistake(t, 2, []string{other, "not an earlier demo", "--out"}, "demo", "--out", other)
+	if got := names(t, other); len(got) != 1 {
+		t.Errorf("the demo wrote into a folder of mine: %v", got)
+	}
+	file := write(t, other, "file", "")
+	mistake(t, 1, []string{"the demo's folder", file}, "demo", "--out", file)
+}
