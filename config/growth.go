@@ -6,6 +6,8 @@ import (
 	"path/filepath"
 	"slices"
 	"strings"
+
+	"lacuna/internal/oops"
 )
 
 // A Growth is a batch for the curve of growth: measured widths of many sightlines.
@@ -66,6 +68,9 @@ func LoadGrowth(path string) (*Growth, error) {
 }
 
 func parseGrowth(path string, m map[string]any) (*Growth, error) {
+	if m["survey"] != nil && m["growth"] == nil {
+		return nil, oops.Input(path, "", "a survey, not a batch for the curve of growth", "lacuna run takes it")
+	}
 	l := &loader{file: path}
 	l.topKeys(m, "growth", "sightline")
 	g := &Growth{File: path, Dir: filepath.Dir(path), by: origins{}}

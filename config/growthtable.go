@@ -17,8 +17,17 @@ func (l *loader) growthTable(g *Growth) []string {
 		return nil
 	}
 	cols := map[string]*table.Column{}
+	// In the table of a survey the star is the object, and what was not detected
+	// keeps its measured width beside the limit.
+	own := t.Has("W_meas_mA") && t.Has("W_meas_err_mA")
 	for _, name := range []string{"sightline", "line", "W_mA", "W_err_mA", "W_kind"} {
 		c, err := t.Col(name)
+		switch {
+		case name == "sightline" && err != nil && t.Has("object"):
+			c, err = t.Col("object")
+		case own && (name == "W_mA" || name == "W_err_mA"):
+			c, err = t.Col(strings.Replace(name, "W_", "W_meas_", 1))
+		}
 		if err == nil {
 			cols[name] = c
 			continue
@@ -69,6 +78,9 @@ func (l *loader) growthTable(g *Growth) []string {
 		switch kind {
 		case "", "value", "marginal":
 		case "upper":
+			if own {
+				break
+			}
 			keys = map[string]string{"W_mA": "limit_mA"}
 		default:
 			l.bad(at(where, "W_kind"), "one of value, marginal, upper", "%s is not known", show(kind))

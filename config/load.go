@@ -75,6 +75,9 @@ func oneLine(s string) string { return strings.Join(strings.Fields(s), " ") }
 
 // parse makes a survey of a tree.
 func parse(path string, m map[string]any) (*Survey, error) {
+	if m["growth"] != nil && m["survey"] == nil {
+		return nil, oops.Input(path, "", "a batch for the curve of growth, not a survey", "lacuna growth takes it")
+	}
 	l := &loader{file: path}
 	l.topKeys(m, "survey", "defaults", "sightline")
 	s := &Survey{File: path, Dir: filepath.Dir(path), by: origins{}}

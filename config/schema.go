@@ -118,7 +118,7 @@ var schema = []KeyDoc{
 	{Table: "growth", Name: "f_set", Type: Text, Default: `"default"`, Meaning: "Set of oscillator strengths."},
 	{Table: "growth", Name: "line_table", Type: Text, Meaning: "CSV file whose rows override or add transitions."},
 	{Table: "growth", Name: "b_range", Type: Pair, Unit: "km/s", Default: `[0.3, 30.0]`, Range: "(0, 1000]", Meaning: "Doppler parameters to try."},
-	{Table: "growth", Name: "table", Type: Text, Meaning: "CSV or ECSV table of widths: columns sightline, line, W_mA, W_err_mA and, where there are limits, W_kind (value, marginal, upper). Other columns are left alone."},
+	{Table: "growth", Name: "table", Type: Text, Meaning: "CSV or ECSV table of widths: columns sightline (or object), line, W_mA, W_err_mA and, where there are limits, W_kind (value, marginal, upper). Other columns are left alone. The widths.ecsv of a survey serves as it is: what it did not detect enters as W ± σ."},
 	{Table: "growth", Name: "limit_sigma", Type: Number, Unit: "σ", Default: `3.0`, Range: "[1, 10]", Meaning: "Level of limits that do not say their own."},
 
 	{Table: "growth.sightline", Name: "name", Type: Text, Required: true, Meaning: "Name of the star. Unique; a name that the table has too adds to it."},

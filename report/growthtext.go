@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"io"
+	"slices"
 	"strings"
 
 	"lacuna/cog"
@@ -102,15 +103,36 @@ func growthRemarks(r cog.Result) string {
 	if len(r.Lines) > 0 {
 		parts = append(parts, count(len(r.Lines), "line"))
 	}
-	for _, c := range r.Contours {
-		if c.Open != "" {
-			parts = append(parts, fmt.Sprintf("Δχ² = %.2f stays open in %s", c.Delta, c.Open))
-		}
-	}
+	parts = append(parts, openContours(r.Contours)...)
 	if r.Stop != "" && r.Stop != "converged" {
 		parts = append(parts, "stopped: "+r.Stop)
 	}
 	return strings.Join(append(parts, r.Notes...), "; ")
+}
+
+// openContours says which contours do not close, each level once: a level may
+// have several pieces.
+func openContours(cs []cog.Contour) []string {
+	var open []string // directions
+	levels := map[string][]string{}
+	for _, c := range cs {
+		level := fmt.Sprintf("%.2f", c.Delta)
+		if c.Open == "" || slices.Contains(levels[c.Open], level) {
+			continue
+		}
+		if levels[c.Open] == nil {
+			open = append(open, c.Open)
+		}
+		levels[c.Open] = append(levels[c.Open], level)
+	}
+	for i, o := range open {
+		verb := "stay"
+		if len(levels[o]) == 1 {
+			verb = "stays"
+		}
+		open[i] = fmt.Sprintf("Δχ² = %s %s open in %s", strings.Join(levels[o], " and "), verb, o)
+	}
+	return open
 }
 
 // growthLines is each line of one fit against the curve.
@@ -122,16 +144,18 @@ func (p *page) growthLines(r cog.Result) {
 	g := &grid{indent: 2, align: "lnrrrrf", head: []string{"line", "W (mÅ)", "fitted", "ΔW/σ", "τ₀", "correction", "remarks"}}
 	for _, l := range r.Lines {
 		width, pull, note := cell{text: "–"}, "", ""
+		digits := widthDecimals(l.Model * mA)
 		switch {
 		case l.Limit:
 			width = cell{"< " + number(l.W*mA, widthDecimals(l.W*mA)), warn}
 			note = "given as a limit"
 		case finite(l.W) && l.Err > 0:
 			v, e := table.Round(l.W*mA, l.Err*mA)
+			digits = errorDecimals(l.Err*mA, l.Err*mA)
 			width.text = minus(v + " ± " + e)
 			pull = signed((l.W-l.Model)/l.Err, 1)
 		}
-		g.add(plainCell(l.Line), width, plainCell(fixed(l.Model*mA, 1)), plainCell(pull), plainCell(fixed(l.Tau0, 2)),
+		g.add(plainCell(l.Line), width, plainCell(fixed(l.Model*mA, digits)), plainCell(pull), plainCell(fixed(l.Tau0, 2)),
 			plainCell(signed(l.Correction, 2)), plainCell(note))
 	}
 	p.grid(g)

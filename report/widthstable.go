@@ -24,7 +24,7 @@ func Widths(rs []survey.Record) *table.Table {
 	v, aboutV := velocityColumn(rs)
 	cols := []table.Column{
 		word("object", "Sightline"),
-		word("line", "Transition: species and wavelength, air above 2000 Å"),
+		word("line", "Transition: species and wavelength, air above 3000 Å, vacuum below"),
 		word("ion", "Species"),
 		word("level", "Lower level, where the species has several"),
 		real("lambda_vac_A", "Angstrom", "Rest wavelength in vacuum"),

@@ -2,6 +2,7 @@ package main
 
 import (
 	"fmt"
+	"strings"
 
 	"github.com/urfave/cli/v2"
 
@@ -44,7 +45,10 @@ Example: lacuna deplete columns.csv --scale asplund2021`,
 			}
 			sightlines, err := abundance.DepleteTable(t, c.String("scale"))
 			if err != nil {
-				return fmt.Errorf("%s: %w", path, err)
+				if !strings.HasPrefix(err.Error(), path+":") { // of the table, its errors say where
+					err = fmt.Errorf("%s: %w", path, err)
+				}
+				return err
 			}
 			var records []survey.Record
 			for i, s := range sightlines {

@@ -64,7 +64,7 @@ Example: lacuna lines --species "Ca II" --from 3900 --to 4000`,
 					return oops.Input("", "--species", fmt.Sprintf("no line of %q in the table", s), "did you mean "+strings.Join(nearSpecies(s, table.Species()), ", ")+"?")
 				}
 			}
-			var out []atomic.Line
+			out := []atomic.Line{}
 			for _, l := range rows {
 				if l.Wave >= lo && l.Wave <= hi {
 					out = append(out, l)
