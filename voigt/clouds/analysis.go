@@ -13,18 +13,19 @@ import (
 // An analysis is the linear model of everything about the solution: the whitened
 // design matrix of all parameters, the linear ones included, and what follows.
 type analysis struct {
-	n, all  int   // free parameters; with the linear ones
-	at      []int // of each free parameter: at a bound (−1, +1), then counted as fixed
-	cov     *mat.SymDense
-	null    [][]float64 // directions that the data do not determine
-	cond    float64     // of the design matrix, columns scaled to unit length
-	chol    [][]float64 // of cov, in the order of order: row i belongs to order[i]
-	order   []int
-	group   []budget.Cause // of each column of chol: whose innovation it is
-	key     []string
-	resp    map[string][]float64 // shift of all parameters when f of a line is +1σ
-	lines   []string             // the keys of resp, in order
-	leverse float64              // Σ over rows of U_i·U_{i−1}
+	n, all int   // free parameters; with the linear ones
+	at     []int // of each free parameter: at a bound (−1, +1), then counted as fixed
+	cov    *mat.SymDense
+	null   [][]float64 // directions that the data do not determine
+	cond   float64     // of the design matrix, columns scaled to unit length
+	chol   [][]float64 // of cov, in the order of order: row i belongs to order[i]
+	order  []int
+	group  []budget.Cause // of each column of chol: whose innovation it is
+	key    []string
+	resp   map[string][]float64 // shift of all parameters when f of a line is +1σ
+	lines  []string             // the keys of resp, in order
+	tied   float64              // Σ over rows of U_i·U_{i−1}, U the basis below
+	basis  *mat.Dense           // orthonormal columns that span the design matrix; nil if empty
 }
 
 // Directions with a singular value below this part of the largest count as
@@ -188,8 +189,9 @@ func (a *analysis) decompose(design *mat.Dense) {
 	// How much neighbouring residuals are tied by the fit: U = X V/s.
 	var u mat.Dense
 	u.Mul(scaled, back)
+	a.basis = &u
 	for i := 1; i < m; i++ {
-		a.leverse += floats.Dot(u.RawRowView(i), u.RawRowView(i-1))
+		a.tied += floats.Dot(u.RawRowView(i), u.RawRowView(i-1))
 	}
 }
 

@@ -116,12 +116,12 @@ func (r *Result) diagnose(f *Fitter, a *analysis) {
 		out := &r.Windows[slices.Index(f.place, k)]
 		out.Chi2 = one.sum2
 		share := float64(one.n) / float64(r.Pixels)
-		out.Whiteness = one.tests(a.leverse*share, float64(r.DOF)*share)
+		out.Whiteness = one.tests(a.tied*share, float64(r.DOF)*share)
 		if w.noise.share < 1 {
 			r.note("%s: the correlations of the noise were scaled by %.2f to belong to any noise at all", w.name, w.noise.share)
 		}
 	}
-	r.Whiteness = all.tests(a.leverse, float64(r.DOF))
+	r.Whiteness = all.tests(a.tied, float64(r.DOF))
 	if !r.Converged {
 		r.note("the fit did not converge: %s", r.Stop)
 	}

@@ -20,7 +20,12 @@ const (
 )
 
 // Points returns the number of residuals, for lsq.Problem.
-func (f *Fitter) Points() int { return f.rows }
+func (f *Fitter) Points() int {
+	if f.hold != nil {
+		return f.rows + 1
+	}
+	return f.rows
+}
 
 // Eval sets the residuals and their derivatives at x, for lsq.Problem.
 func (f *Fitter) Eval(x, r []float64, jac *mat.Dense) {
@@ -58,6 +63,14 @@ func (f *Fitter) Eval(x, r []float64, jac *mat.Dense) {
 		clear(dst)
 		for _, t := range p.value.terms {
 			dst[t.j] -= t.k / p.sigma
+		}
+	}
+	if h := f.hold; h != nil {
+		i := f.rows
+		r[i] = h.weight * (f.value(h.of, x, h.grad) - h.at)
+		dst := raw.Data[i*raw.Stride : i*raw.Stride+n]
+		for j, g := range h.grad {
+			dst[j] = h.weight * g
 		}
 	}
 }
@@ -250,11 +263,8 @@ func (w *window) columns() {
 		mean, sigma := w.in.Zero, w.in.ZeroErr
 		if p > 0 { // flux z' with the mean level c₀: (z' − Zero c₀)/(ZeroErr) in units of the mean flux
 			row[0], row[w.zeroCol] = -mean/sigma, 1/sigma
-			w.data[n] = 0
-		} else {
-			g := (1 + mean) * (1 + mean) / sigma // dz/dζ = (1 + z)²
-			row[w.zeroCol] = g
-			w.data[n] = g * mean / (1 + mean)
+		} else { // dz/dζ = (1 + z)²
+			row[w.zeroCol] = (1 + mean) * (1 + mean) / sigma
 		}
 	}
 }

@@ -33,8 +33,14 @@ type Result struct {
 	Whiteness  Tests    `json:"tests"`
 	Notes      []string `json:"notes,omitempty"`
 
+	// The number of clouds was chosen from the data: the intervals of single clouds hold
+	// for this number only.
+	Conditional bool `json:"conditional,omitempty"`
+
 	X   []float64 `json:"x"` // free parameters, in the order of Free
 	Cov []float64 `json:"-"` // their covariance, row by row; the undetermined directions left out
+
+	a *analysis
 }
 
 // A CloudFit is one cloud.
@@ -128,7 +134,7 @@ func (f *Fitter) result(s state) Result {
 	a := f.analyse(s.x, s.at)
 	r := Result{
 		Chi2: s.chi2, Stop: s.stop, Converged: s.ok, Iterations: s.its, Evaluations: s.evals,
-		Condition: min(a.cond, 1e300), X: s.x,
+		Condition: min(a.cond, 1e300), X: s.x, a: a,
 	}
 	n := len(s.x)
 	r.Cov = make([]float64, n*n)

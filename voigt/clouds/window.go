@@ -202,6 +202,13 @@ func (w *window) whitenData(flux []float64) {
 		w.data[i] = flux[p] / w.unit * w.inv[i]
 	}
 	w.noise.whiten(w.data[:len(w.pix)], 1)
+	if w.zeroRow { // see columns
+		z := w.in.Zero
+		w.data[len(w.pix)] = 0
+		if w.deg == NoContinuum {
+			w.data[len(w.pix)] = z * (1 + z) / w.in.ZeroErr
+		}
+	}
 }
 
 // linear prepares the projection once the columns are known.
