@@ -23,7 +23,8 @@ type Fitter struct {
 	q      float64 // sub-grid steps asked for; 0: automatic
 	lo, hi []float64
 	start  []float64
-	rows   int       // residuals left after the projection
+	rows   int       // residuals
+	hold   *hold     // one more row, during a profile
 	gridX  []float64 // the point that the sub-grids were made for
 	ws     lsq.Workspace
 }
