@@ -180,3 +180,48 @@ func TestWeakLine(t *testing.T) {
 		t.Errorf("τ₀ = 0.5 gives %s", w.Linear.Kind())
 	}
 }
+
+// A line of 4.5σ over twice the resolution, away from the middle of a window six times
+// as wide, drowns in the noise of the window; no limit may lie below its width.
+// (Flux without noise, so that the wanted numbers are arithmetic: n pixels of error s
+// give σ = Δλ s √n.)
+func TestWideWindowDrownsNoLine(t *testing.T) {
+	const n, s = 600, 0.01
+	wave, sigma := make([]float64, n), constant(s, n)
+	for i := range wave {
+		wave[i] = ki.Wave + 0.0139*(float64(i)-299.5)
+	}
+	pixel := velocity(ki.Wave+0.0139, ki.Wave)
+	flux := constant(1, n)
+	const pixels = 26 // of the limit
+	first := 240      // of the line: 5 pixels with 4.5σ of the limit's range in all, 1.8σ of the window's
+	depth := 4.5 * s * math.Sqrt(pixels) / 5
+	for i := range 5 {
+		flux[first+i] -= depth
+	}
+	p := Piece{Line: ki, Wave: wave, Flux: flux, Window: [2]float64{-78 * pixel, 78 * pixel}, LimitWidth: pixels * pixel, Continuum: flat(1, 0, wave, sigma)}
+	w := mustMeasure(t, p)
+	sig := 0.0139 * s * math.Sqrt(pixels)
+	if w.Detected || w.Inside == nil || !w.Inside.Detected {
+		t.Fatalf("detected %v over the window (W = %.2g ± %.2g Å), inside %+v", w.Detected, w.W.X, w.W.Err(), w.Inside)
+	}
+	near(t, "W inside", w.Inside.W, 4.5*sig, 1e-9)
+	near(t, "limit", w.Limit, 6.5*sig, 1e-6)
+	if v := velocity(wave[first+2], ki.Wave); !(v > w.Inside.Window[0] && v < w.Inside.Window[1]) {
+		t.Errorf("found between %g and %g km/s, it is at %g", w.Inside.Window[0], w.Inside.Window[1], v)
+	}
+	// Nothing there: the limit is 3σ over its own range.
+	p.Flux = constant(1, n)
+	w = mustMeasure(t, p)
+	if near(t, "limit of nothing", w.Limit, 3*sig, 1e-6); w.Inside != nil {
+		t.Errorf("inside nothing: %+v", w.Inside)
+	}
+}
+
+// Of n numbers one exceeds oneOf(2, n) as rarely as one alone exceeds 2: the
+// one-sided chances are 0.02275 and 0.02275/n (tables of the normal distribution:
+// 2.6686 for 0.0038, 0.02275/6).
+func TestOneOf(t *testing.T) {
+	near(t, "one", oneOf(2, 1), 2, 1e-12)
+	near(t, "six", oneOf(2, 6), 2.669, 1e-3)
+}

@@ -16,7 +16,8 @@ var fwhmPerB = 2 * math.Sqrt(math.Ln2)
 // velocity: twice the width at half maximum that the line would be observed with,
 // √(FWHM² + (2√ln2·b)²), about the middle of the window. It describes the data and
 // not the line, so the measured W does not enter; but where W is marginal (2σ to
-// 3σ) the limit is not below W + 2σ.
+// 3σ) the limit is not below W + 2σ. A window wider than that may drown a line that
+// a stretch of it shows (see stretch): the limit is not below W + 2σ there.
 func (w *work) judge(cover []float64) {
 	o := &w.out
 	sigma := o.W.Err()
@@ -47,7 +48,7 @@ func (w *work) judge(cover []float64) {
 		w.note("the limit's range of %.1f km/s reaches outside the spectrum and was cut", o.LimitWidth)
 		lo, hi = max(lo, first), min(hi, last)
 	}
-	o.Limit = o.LimitSigma * w.errorOver(lo, hi)
+	o.Limit = o.LimitSigma * w.over(lo, hi).Err()
 	if o.W.X >= marginal*sigma {
 		o.W.Flag |= budget.Marginal
 		o.Flag |= budget.Marginal
@@ -56,15 +57,49 @@ func (w *work) judge(cover []float64) {
 			w.note("marginal: the limit is W + 2σ = %.2f mÅ", 1e3*up)
 		}
 	}
+	w.stretch(threshold)
 }
 
-// errorOver is the total error of W over a range of velocity.
-func (w *work) errorOver(lo, hi float64) float64 {
+// stretch looks for the line in stretches of the window as wide as the limit, one
+// every half of that. Of n that fit beside each other each may exceed the level
+// whose chance, for all together, is that of 2σ for one (Bonferroni); the largest
+// W + 2σ of those that do is a lower bound of the limit.
+func (w *work) stretch(threshold float64) {
+	o := &w.out
+	span := o.Window[1] - o.Window[0]
+	if !(o.LimitWidth < span) {
+		return
+	}
+	level := oneOf(marginal, span/o.LimitWidth)
+	steps := int(math.Ceil(2 * (span/o.LimitWidth - 1)))
+	for k := range steps + 1 {
+		lo := o.Window[0] + float64(k)/float64(steps)*(span-o.LimitWidth)
+		n := w.over(lo, lo+o.LimitWidth)
+		if s := n.Err(); n.X >= level*s && n.X+2*s > o.Limit {
+			o.Limit = n.X + 2*s
+			o.Inside = &Stretch{Window: [2]float64{lo, lo + o.LimitWidth}, W: n.X, Err: s, Detected: n.X >= threshold*s}
+		}
+	}
+	if in := o.Inside; in != nil {
+		w.note("between %.1f and %.1f km/s W = %.2f ± %.2f mÅ: the limit is W + 2σ there; a narrower window may find the line",
+			in.Window[0], in.Window[1], 1e3*in.W, 1e3*in.Err)
+	}
+}
+
+// oneOf is the level that one of n ≥ 1 independent Gaussian numbers exceeds as
+// rarely as a single one exceeds z.
+func oneOf(z, n float64) float64 {
+	return math.Sqrt2 * math.Erfcinv(math.Erfc(z/math.Sqrt2)/n)
+}
+
+// over is W with its total error over a range of velocity; NaN where it holds
+// nothing but masked pixels.
+func (w *work) over(lo, hi float64) budget.Number {
 	cover := w.cover(lo, hi)
 	keepF, keepFill, bad := slices.Clone(w.f), w.fill, w.bad
 	if w.fillIn(cover) != nil { // nothing but masked pixels there
 		w.f, w.fill, w.bad = keepF, keepFill, bad
-		return math.NaN()
+		return budget.Number{X: math.NaN(), Up: math.NaN(), Lo: math.NaN(), Shifts: []budget.Shift{{D: math.NaN()}}}
 	}
 	n := w.width(cover)
 	s := w.placement(cover, func(c []float64) float64 { return w.integral(cover, c) }, func(int) float64 { return -1 })
@@ -72,7 +107,7 @@ func (w *work) errorOver(lo, hi float64) float64 {
 		n.Shifts = append(n.Shifts, *s.shift)
 	}
 	w.f, w.fill = keepF, keepFill
-	return n.Err()
+	return n
 }
 
 // vollmannEversberg is √(1 + C̄/F̄) (Δλ − W) / (S/N), S/N that of one pixel of the

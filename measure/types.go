@@ -66,11 +66,12 @@ type Width struct {
 	Detected   bool          `json:"detected"`
 	Limit      float64       `json:"limit"` // Å, upper limit where not detected, else 0
 	LimitSigma float64       `json:"limit_sigma"`
-	LimitWidth float64       `json:"limit_width"` // km/s
-	LimitB     float64       `json:"limit_b"`     // km/s
-	SigmaVE06  float64       `json:"sigma_ve06"`  // Å, Vollmann & Eversberg 2006, for comparison only
-	V          budget.Number `json:"v"`           // km/s, mean velocity weighted by 1−F/C
-	Depth      float64       `json:"depth"`       // deepest 1−F/C
+	LimitWidth float64       `json:"limit_width"`      // km/s
+	LimitB     float64       `json:"limit_b"`          // km/s
+	Inside     *Stretch      `json:"inside,omitempty"` // where the window drowns a line: what raised the limit
+	SigmaVE06  float64       `json:"sigma_ve06"`       // Å, Vollmann & Eversberg 2006, for comparison only
+	V          budget.Number `json:"v"`                // km/s, mean velocity weighted by 1−F/C
+	Depth      float64       `json:"depth"`            // deepest 1−F/C
 	SNPixel    float64       `json:"sn_pixel"`
 	SNElement  float64       `json:"sn_element"` // per resolution element; 0 when FWHM is unknown
 	FillPart   float64       `json:"fill_part"`  // part of W that was filled
@@ -108,6 +109,14 @@ type Width struct {
 	Bin        int         `json:"bin"`                  // pixels averaged before the logarithm of the apparent optical depth
 
 	Profile Profile `json:"profile"` // for figures
+}
+
+// A Stretch is a part of a window, as wide as a limit, with a width of its own.
+type Stretch struct {
+	Window   [2]float64 `json:"window"` // km/s
+	W        float64    `json:"w"`      // Å
+	Err      float64    `json:"err"`    // Å, 1σ, all causes
+	Detected bool       `json:"detected,omitempty"`
 }
 
 // A Placement is the width with another continuum.

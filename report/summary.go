@@ -7,6 +7,7 @@ import (
 
 	"lacuna/abundance"
 	"lacuna/budget"
+	"lacuna/internal/table"
 	"lacuna/measure"
 	"lacuna/spectrum/frame"
 	"lacuna/survey"
@@ -173,6 +174,11 @@ func remarks(w measure.Width) string {
 		}
 		parts = append(parts, fmt.Sprintf("%s; %sσ limit over %s km/s with b = %s km/s", first, number(w.LimitSigma, decimalsOf(w.LimitSigma)),
 			number(w.LimitWidth, decimalsOf(w.LimitWidth)), number(w.LimitB, decimalsOf(w.LimitB))))
+		if in := w.Inside; in != nil {
+			v, e := table.Round(in.W*mA, in.Err*mA)
+			parts = append(parts, fmt.Sprintf("between %s and %s km/s W = %s ± %s mÅ, which sets the limit: narrow the window",
+				number(in.Window[0], 1), number(in.Window[1], 1), minus(v), e))
+		}
 	}
 	f := w.Flag | w.W.Flag
 	parts = append(parts, (f &^ (budget.Upper | budget.Lower | budget.Interval | budget.Blended)).Words()...)
