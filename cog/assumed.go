@@ -28,6 +28,10 @@ func (f *fit) assumed() error {
 	if err != nil {
 		return err
 	}
+	widest, _, err := at(f.o.BMax)
+	if err != nil {
+		return err
+	}
 	f.best, f.res.Chi2, f.res.BestB = mid, chi2, f.o.B
 	f.corrections()
 	f.res.B.Flag = 0
@@ -42,14 +46,16 @@ func (f *fit) assumed() error {
 		if f.saturated(c) {
 			x.Flag |= budget.Saturated
 		}
-		if spread > assumedMost {
-			// the largest b gives the least N, less what the widths allow
-			g, _ := f.exact.response(wide, false)
+		if most := narrow[c] - widest[c]; most > assumedMost {
+			// The largest b that is allowed at all gives the least N, less what the widths
+			// allow: a limit must not rest on an assumption about b, since clouds side by
+			// side are as good as one wide cloud.
+			g, _ := f.exact.response(widest, false)
 			n := f.number(g[c], 1)
 			f.exact.model(f.best)
-			x = bounded(x, wide[c]-f.o.Sigma*n.Without(budget.FValue), f.o.Sigma, budget.Lower|budget.Saturated)
+			x = bounded(x, widest[c]-f.o.Sigma*n.Without(budget.FValue), f.o.Sigma, budget.Lower|budget.Saturated)
 			f.note("log N(%s) moves by %.2f dex for b from %g to %g km/s: lower limit at %g σ and b = %g km/s",
-				f.levels[k].Name, spread, f.o.BLow, f.o.BHigh, x.Conf, f.o.BHigh)
+				f.levels[k].Name, most, f.o.BLow, f.o.BMax, x.Conf, f.o.BMax)
 		} else {
 			stat := x.Err()
 			x.Shifts = append(x.Shifts, budget.Shift{Cause: budget.Profile, Key: key, D: -spread / 2})

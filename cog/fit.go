@@ -17,7 +17,8 @@ const (
 	scanSteps = 28   // values of ln b at which the valley is first looked at
 	// From this change of log N per dex of b a column hangs on a bound of b.
 	hangs = 0.2
-	// A column that the assumed range of b moves by more is only a lower limit (dex).
+	// A column that b between the least assumed and the largest allowed moves by more
+	// is only a lower limit (dex).
 	assumedMost = 0.3
 )
 
@@ -58,7 +59,8 @@ func Fit(species string, pts []Point, o Options) (Result, error) {
 //
 //   - b open on one side is a limit, at the largest of Sigma, 2 and 1σ at which it
 //     closes; open on both it is none, and N is taken at the assumed b, with the
-//     range of b as a Profile shift, or as a lower limit where that is > 0.3 dex;
+//     range of b as a Profile shift, or, where b up to its upper bound moves N by more
+//     than 0.3 dex, as a lower limit at that bound;
 //   - N that hangs on the lower bound of b is a lower limit;
 //   - a level without a detection at 3σ gets an upper limit, N ± σ behind it;
 //   - two solutions that are equally good at 1σ (a flat and a damped one) give

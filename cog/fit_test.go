@@ -255,6 +255,22 @@ func TestFitSaysWhatItCannotSay(t *testing.T) {
 		if n := r.LogN[0]; n.Kind() != "lower" || !n.Is(budget.Saturated) || !(n.X < 14.5) || n.Conf != 3 {
 			t.Errorf("log N %s %v, flags %v, conf %g", n.Kind(), n.X, n.Flag, n.Conf)
 		}
+		// Neither value nor limit may rest on the b assumed: clouds of b = 2 side by side
+		// have the width of one with a larger b, or of one with damping wings.
+		l := ladder(0.3)
+		for _, clouds := range []float64{2, 3, 6} {
+			w := clouds * cog.Width(l[0], 13.5, 2)
+			truth := 13.5 + math.Log10(clouds)
+			r = mustFit(t, []cog.Point{{Line: l[0], W: w, Err: 0.01 * w}}, cog.Options{})
+			if n := r.LogN[0]; n.Kind() != "lower" || !(n.X < truth) {
+				t.Errorf("%g clouds of %.2f in all: log N %s %.2f", clouds, truth, n.Kind(), n.X)
+			}
+		}
+		// A line with damping wings is another matter: no b within the bounds explains it.
+		r = mustFit(t, []cog.Point{{Line: l[0], W: cog.Width(l[0], 20, 2), Err: 0.1}}, cog.Options{})
+		if n := r.LogN[0]; n.Kind() != "value" || !(math.Abs(n.X-20) < 3*n.ErrUp()) {
+			t.Errorf("a damped line: log N %s %.2f ± %.2f", n.Kind(), n.X, n.Err())
+		}
 	})
 	t.Run("flat", func(t *testing.T) {
 		// two strong lines of nearly equal fλ cannot tell N from b
