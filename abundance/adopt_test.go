@@ -164,6 +164,17 @@ func TestAdoptLimits(t *testing.T) {
 	if a.LogN.Kind() != "upper" || !(math.Abs(a.LogN.X-math.Log10(3e12/math.Sqrt2)) <= 1e-9) || a.LogN.Behind == nil {
 		t.Errorf("stacked non-detections: %s %.4f, %q", a.LogN.Kind(), a.LogN.X, a.Rule)
 	}
+	// A second line that says little (100 times the error, N = 2σ) cannot raise the
+	// limit of the first; N ± σ stays that of both.
+	poor := budget.Number{X: 2e14, Shifts: []budget.Shift{{Cause: budget.Photon, D: 1e14}}}
+	good := budget.Number{X: 2e12, Shifts: []budget.Shift{{Cause: budget.Photon, D: 1e12}}}
+	limit := func(line string, n budget.Number, x float64) abundance.Column {
+		return abundance.Column{Species: "Fe II", Element: "Fe", Method: abundance.MethodWeak, Line: line, LogN: budget.Log10(budget.Limit(n, x, 3))}
+	}
+	a = adopt(t, []abundance.Column{limit(strong, good, 4e12), limit(weak, poor, 4e14)}, nil)
+	if a.LogN.Kind() != "upper" || !(math.Abs(a.LogN.X-math.Log10(4e12)) <= 1e-12) || a.LogN.Behind == nil || !(a.LogN.Behind.Err() < 1e12) || !strings.Contains(a.Rule, strong) {
+		t.Errorf("a good and a poor non-detection: %s %.4f, %q", a.LogN.Kind(), a.LogN.X, a.Rule)
+	}
 }
 
 func TestOverride(t *testing.T) {

@@ -98,7 +98,8 @@ func onePerLine(cols []Column) []Column {
 }
 
 // stack averages non-detections as what they are, linear N ± σ, with weights
-// 1/σ²: the limit falls as more lines join, but not below what they share.
+// 1/σ²: the limit falls as more lines join, but not below what they share. It is
+// never above the strongest limit of one line.
 func stack(own []Column) Column {
 	w := make([]float64, len(own))
 	n := make([]budget.Number, len(own))
@@ -134,6 +135,12 @@ func stack(own []Column) Column {
 	}
 	out.LogN = budget.Log10(budget.Limit(total, math.Max(total.X, 0)+conf*total.Err(), conf))
 	out.Rule = fmt.Sprintf("no method gives a value: upper limit from the mean of %d non-detections: %s", len(own), strings.Join(names, ", "))
+	// One line's limit holds over a narrower range than its N ± σ, and may say more.
+	best := slices.MinFunc(own, func(a, b Column) int { return compareFloat(a.LogN.X, b.LogN.X) })
+	if best.LogN.X < out.LogN.X {
+		out.LogN.X, out.LogN.Conf, out.Line = best.LogN.X, best.LogN.Conf, best.Line
+		out.Rule = fmt.Sprintf("no method gives a value: the strongest upper limit, %s; N ± σ from the mean of %d non-detections: %s", named(best), len(own), strings.Join(names, ", "))
+	}
 	return out
 }
 

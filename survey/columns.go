@@ -141,7 +141,8 @@ func (c *chain) doublets(ws []measure.Width) []measure.Doublet {
 }
 
 // growth fits a curve of growth to each species that has two lines or more with
-// one detected, and to the levels of one molecule together.
+// one detected, and to the levels of one molecule together. One line in several
+// orders is one line: it says nothing about b.
 func (c *chain) growth(ws []measure.Width, s config.Sightline) ([]cog.Result, error) {
 	type group struct {
 		name   string
@@ -175,16 +176,18 @@ func (c *chain) growth(ws []measure.Width, s config.Sightline) ([]cog.Result, er
 	}
 	var out []cog.Result
 	for _, g := range groups {
-		points, detected := 0, 0
+		lines, detected := 0, 0
 		for _, l := range g.levels {
-			points += len(l.Points)
-			for _, p := range l.Points {
+			for i, p := range l.Points {
+				if !slices.ContainsFunc(l.Points[:i], func(q cog.Point) bool { return q.Line.Name == p.Line.Name }) {
+					lines++
+				}
 				if p.W > 3*p.Err {
 					detected++
 				}
 			}
 		}
-		if points < 2 || points <= len(g.levels) || detected == 0 {
+		if lines <= len(g.levels) || detected == 0 {
 			continue // N alone: the weak-line relation says as much
 		}
 		r, err := cog.FitLevels(g.name, g.levels, cog.Options{Key: s.Name, BMin: s.BRange[0], BMax: s.BRange[1], Sigma: s.LimitSigma})
