@@ -29,6 +29,9 @@ func (s *Survey) CheckFiles() error {
 		for j, sp := range x.Spectra {
 			where := nth(place(i, x.Name)+": spectrum", j)
 			look(at(where, "file"), sp.File)
+			if sp.LineSpread != "" {
+				look(at(where, "line_spread"), sp.LineSpread)
+			}
 			if sp.ContinuumFile != "" {
 				look(at(where, "continuum_file"), sp.ContinuumFile)
 			}

@@ -78,7 +78,7 @@ func parseGrowth(path string, m map[string]any) (*Growth, error) {
 	if t := l.table("", "growth", m); t != nil {
 		l.required("growth", "growth", t)
 		l.fill("growth", "growth", t, g, g.by, "")
-	} else if m["growth"] == nil {
+	} else if m["growth"] == nil && !l.told("growth") {
 		l.bad("growth", `add [growth] with name = "…"`, "missing")
 	}
 	l.tab = l.lineTable("growth", g.Dir, &g.FSet, g.LineTable)

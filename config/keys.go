@@ -13,16 +13,18 @@ type Type string
 
 // The types.
 const (
-	Text     Type = "text"
-	Number   Type = "number"
-	Integer  Type = "integer"
-	Switch   Type = "true or false"
-	Pair     Type = "pair of numbers"
-	Pairs    Type = "list of pairs"
-	Texts    Type = "list of texts"
-	Integers Type = "list of integers"
-	Table    Type = "table"
-	Tables   Type = "tables"
+	Text      Type = "text"
+	Number    Type = "number"
+	Integer   Type = "integer"
+	Switch    Type = "true or false"
+	Pair      Type = "pair of numbers"
+	Pairs     Type = "list of pairs"
+	Texts     Type = "list of texts"
+	Integers  Type = "list of integers"
+	Table     Type = "table"
+	Tables    Type = "tables"
+	OneOf     Type = "number or parameter" // of a fit
+	BySpecies Type = "table of numbers or parameters, by species"
 )
 
 // A KeyDoc says everything about one key: the loader checks by it, the manual is

@@ -23,6 +23,7 @@ var update = flag.Bool("update", false, "write docs/config.md")
 var structs = map[string]any{
 	"survey": &Survey{}, "sightline": &Sightline{}, "sightline.spectrum": &Spectrum{}, "sightline.line": &Line{},
 	"sightline.hydrogen": &Hydrogen{}, "sightline.column": &Column{}, "sightline.adopt": &Adopt{},
+	"sightline.fit": &Fit{}, "sightline.fit.cloud": &FitCloud{}, "parameter": &Parameter{},
 	"zero_level": &ZeroLevel{}, "E_BV": &Quantity{}, "columns": &Names{},
 	"growth": &Growth{}, "growth.sightline": &GrowthSightline{}, "growth.sightline.width": &GrowthWidth{},
 	"growth.sightline.share_b": &struct {
@@ -124,7 +125,9 @@ func TestStarters(t *testing.T) {
 	}
 }
 
-func inline(table string) bool { return table == "zero_level" || table == "E_BV" || table == "columns" }
+func inline(table string) bool {
+	return table == "parameter" || table == "zero_level" || table == "E_BV" || table == "columns"
+}
 
 // A default that a starter shows as one must be the default.
 func TestStarterDefaults(t *testing.T) {
@@ -166,11 +169,14 @@ var tableTitles = []struct{ table, title, text string }{
 	{"sightline", "[[sightline]]", "Once for each star. Keys marked ◆ may also stand in `[defaults]`."},
 	{"sightline.spectrum", "[[sightline.spectrum]]", "Once for each file. All but `file` and `continuum_file` may also stand in `[defaults.spectrum]`."},
 	{"sightline.line", "[[sightline.line]]", "For a transition with settings of its own. `[[defaults.line]]` holds settings of one transition for all sightlines."},
+	{"sightline.fit", "[[sightline.fit]]", "Clouds fitted to lines; [clouds.md](clouds.md) shows how. The species of a cloud share v and b unless you say otherwise."},
+	{"sightline.fit.cloud", "[[sightline.fit.cloud]]", "Once for each cloud of the fit above it. Each parameter is a number, where it starts, or `{…}` (see parameter)."},
 	{"sightline.hydrogen", "[sightline.hydrogen]", "Each column is a value with its error, or an upper limit. Without N(H₂) or a limit on it, N(H) has no upper end."},
 	{"sightline.column", "[[sightline.column]]", "Column densities that were not measured here."},
 	{"sightline.adopt", "[[sightline.adopt]]", "Give either `method` or `logN`."},
 	{"zero_level", "zero_level = {…}", ""},
 	{"E_BV", "E_BV = {…}", ""},
+	{"parameter", "{…} of a parameter", "`b = {start = 1.3, range = [0.5, 3]}`, `v = {start = -14, fixed = true}`, `b = {prior = 1.2, prior_err = 0.2}`, `columns = {\"CH+\" = 12.5, \"13CH+\" = {to = \"CH+\", ratio = 0.0143}}`. Values are in the unit of the parameter."},
 	{"columns", "columns = {…}", ""},
 	{"growth", "[growth]", "A growth-curve batch is a file of its own."},
 	{"growth.sightline", "[[sightline]] of a batch", ""},

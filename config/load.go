@@ -85,7 +85,7 @@ func parse(path string, m map[string]any) (*Survey, error) {
 	if sv := l.table("", "survey", m); sv != nil {
 		l.required("survey", "survey", sv)
 		l.fill("survey", "survey", sv, s, s.by, "")
-	} else if m["survey"] == nil {
+	} else if m["survey"] == nil && !l.told("survey") {
 		l.bad("survey", `add [survey] with name = "…"`, "missing")
 	}
 	l.checkScale(s.Scale)

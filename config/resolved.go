@@ -35,6 +35,13 @@ func (x *Sightline) write(b *bytes.Buffer) {
 	for i := range x.Lines {
 		section(b, "[[sightline.line]]", "sightline.line", &x.Lines[i], x.Lines[i].by)
 	}
+	for i := range x.Fits {
+		f := &x.Fits[i]
+		section(b, "[[sightline.fit]]", "sightline.fit", f, f.by)
+		for j := range f.Clouds {
+			section(b, "[[sightline.fit.cloud]]", "sightline.fit.cloud", &f.Clouds[j], f.Clouds[j].by)
+		}
+	}
 	if x.Hydrogen != nil {
 		section(b, "[sightline.hydrogen]", "sightline.hydrogen", x.Hydrogen, x.Hydrogen.by)
 	}
@@ -96,6 +103,12 @@ func (s *Survey) Defaults() []Setting {
 		}
 		for j := range x.Lines {
 			add("sightline.line", &x.Lines[j], x.Lines[j].by)
+		}
+		for j := range x.Fits {
+			add("sightline.fit", &x.Fits[j], x.Fits[j].by)
+			for k := range x.Fits[j].Clouds {
+				add("sightline.fit.cloud", &x.Fits[j].Clouds[k], x.Fits[j].Clouds[k].by)
+			}
 		}
 		for j := range x.Columns {
 			add("sightline.column", &x.Columns[j], x.Columns[j].by)
@@ -168,7 +181,17 @@ func value(f reflect.Value) string {
 			parts[i] = value(f.Index(i))
 		}
 		return "[" + strings.Join(parts, ", ") + "]"
+	case reflect.Map:
+		ps := f.Interface().(Parameters)
+		parts := make([]string, 0, len(ps))
+		for _, name := range sortedSpecies(ps) {
+			parts = append(parts, quote(name)+" = "+ps[name].text())
+		}
+		return "{" + strings.Join(parts, ", ") + "}"
 	case reflect.Struct:
+		if p, ok := f.Interface().(Parameter); ok {
+			return p.text()
+		}
 		var parts []string
 		for i := range f.NumField() {
 			key := f.Type().Field(i).Tag.Get("toml")
@@ -181,6 +204,21 @@ func value(f reflect.Value) string {
 		return "{" + strings.Join(parts, ", ") + "}"
 	}
 	panic("config: no TOML for " + f.Type().String())
+}
+
+// text is a parameter as TOML: a number where that says all.
+func (p Parameter) text() string {
+	if p.Start != nil && p == (Parameter{Start: p.Start}) {
+		return value(reflect.ValueOf(*p.Start))
+	}
+	var parts []string
+	v := reflect.ValueOf(p)
+	for i := range v.NumField() {
+		if f := v.Field(i); !f.IsZero() {
+			parts = append(parts, v.Type().Field(i).Tag.Get("toml")+" = "+value(f))
+		}
+	}
+	return "{" + strings.Join(parts, ", ") + "}"
 }
 
 // quote writes a text that badText accepts: no control characters to escape.

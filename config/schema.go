@@ -6,6 +6,7 @@ var (
 	mediumWords  = []string{"air", "vacuum"}
 	formulaWords = []string{"ciddor1996", "edlen1966", "edlen1953", "morton2000"}
 	kindWords    = []string{"value", "upper", "lower"}
+	airWords     = []string{"mask", "keep"}
 	methodWords  = []string{"weak line", "apparent optical depth", "growth curve", "fit", "given"}
 )
 
@@ -42,6 +43,7 @@ var schema = []KeyDoc{
 	{Table: "sightline", Name: "max_degree", Type: Integer, Default: `3`, Range: "[0, 5]", Common: true, Meaning: "Highest degree of a continuum whose degree is found automatically."},
 	{Table: "sightline", Name: "spectrum", Type: Tables, Common: true, Meaning: "The spectra of the star. [defaults.spectrum], one table, is for all spectra."},
 	{Table: "sightline", Name: "line", Type: Tables, Common: true, Meaning: "Transitions with settings of their own. [[defaults.line]] is for all sightlines, key by key."},
+	{Table: "sightline", Name: "fit", Type: Tables, Common: true, Meaning: "Clouds to be fitted to lines. [[defaults.fit]] is for all sightlines without a fit of their own, as far as they have its lines."},
 	{Table: "sightline", Name: "hydrogen", Type: Table, Meaning: "Hydrogen columns, for depletions."},
 	{Table: "sightline", Name: "column", Type: Tables, Meaning: "Column densities from elsewhere."},
 	{Table: "sightline", Name: "adopt", Type: Tables, Meaning: "Your own choice of a column, in place of the rule's."},
@@ -52,6 +54,7 @@ var schema = []KeyDoc{
 	{Table: "sightline.spectrum", Name: "correction", Type: Number, Unit: "km/s", Range: "[-1000, 1000]", Meaning: "Velocity to add to reach the survey's frame, in place of the header's."},
 	{Table: "sightline.spectrum", Name: "resolving_power", Type: Number, Range: "[100, 1e7]", Meaning: "λ/FWHM of the instrument, in place of the header's."},
 	{Table: "sightline.spectrum", Name: "resolving_power_err", Type: Number, Default: `0.05`, Range: "[0, 1)", Meaning: "Its relative 1σ error."},
+	{Table: "sightline.spectrum", Name: "line_spread", Type: Text, Meaning: "File with the line spread function, for fits, in place of a Gaussian of the resolving power: a column offset_A, offset_kms or offset_pixel, and one for each wavelength (Å, vacuum)."},
 	{Table: "sightline.spectrum", Name: "normalised", Type: Switch, Meaning: "true: the continuum was divided out. Needs continuum_err."},
 	{Table: "sightline.spectrum", Name: "continuum_err", Type: Number, Range: "(0, 1)", Meaning: "Relative 1σ error of a continuum that is not our own. Required with normalised = true, continuum_column or continuum_file."},
 	{Table: "sightline.spectrum", Name: "continuum_column", Type: Text, Meaning: "Column of the file that holds the continuum."},
@@ -77,6 +80,30 @@ var schema = []KeyDoc{
 	{Table: "sightline.line", Name: "b", Type: Number, Unit: "km/s", Range: "(0, 1000]", Meaning: "Doppler parameter assumed for a limit; b_atom or b_molecule where not given."},
 	{Table: "sightline.line", Name: "limit_width", Type: Number, Unit: "km/s", Range: "[0, 10000]", Meaning: "As in the sightline, for this line."},
 	{Table: "sightline.line", Name: "note", Type: Text, Meaning: "Free text, kept with the configuration in the manifest."},
+
+	{Table: "sightline.fit", Name: "name", Type: Text, Meaning: "Name of the fit in tables and figures; its species where not given."},
+	{Table: "sightline.fit", Name: "lines", Type: Texts, Required: true, Meaning: "Transitions fitted together, among those that the sightline measures. The fit uses the pixels of their windows and of their continuum, in every order and spectrum that holds them."},
+	{Table: "sightline.fit", Name: "window", Type: Pair, Unit: "km/s", Range: "[-30000, 30000]", Meaning: "Where the lines may absorb, in place of the window of each."},
+	{Table: "sightline.fit", Name: "degree", Type: Integer, Default: `-1`, Range: "[-1, 5]", Meaning: "Degree of the continuum, which is fitted with the clouds; −1: that found for the line's width."},
+	{Table: "sightline.fit", Name: "auto", Type: Switch, Default: `false`, Meaning: "true: the number of clouds and their starts are found. Errors of single clouds then hold for that number only; totals carry what it leaves open."},
+	{Table: "sightline.fit", Name: "most", Type: Integer, Default: `8`, Range: "[1, 20]", Meaning: "Clouds at most, with auto."},
+	{Table: "sightline.fit", Name: "share_b", Type: Switch, Default: `true`, Meaning: "false: each species of a cloud has a Doppler parameter of its own."},
+	{Table: "sightline.fit", Name: "share_v", Type: Switch, Default: `true`, Meaning: "false: each species of a cloud has a velocity of its own."},
+	{Table: "sightline.fit", Name: "offset", Type: Texts, Meaning: "Species whose velocities differ from the others' by one number, the same in all clouds."},
+	{Table: "sightline.fit", Name: "thermal", Type: Switch, Default: `false`, Meaning: "true: b² = 2kT/m + turbulence², with T and turbulence of each cloud in place of b."},
+	{Table: "sightline.fit", Name: "velocity_zero_err", Type: Number, Unit: "km/s", Default: `0.0`, Range: "[0, 100]", Meaning: "1σ error of the velocity zero point of each spectrum, which is then fitted too."},
+	{Table: "sightline.fit", Name: "telluric", Type: Text, Default: `"mask"`, Words: airWords, Meaning: "Pixels in the windows where lines of the air are known to fall: not used, or kept where the spectrum was corrected."},
+	{Table: "sightline.fit", Name: "note", Type: Text, Meaning: "Free text, kept with the configuration in the manifest."},
+	{Table: "sightline.fit", Name: "cloud", Type: Tables, Meaning: "The clouds to start from; none with auto."},
+
+	{Table: "sightline.fit.cloud", Name: "name", Type: Text, Meaning: "Name of the cloud, for ties; cloud 1, cloud 2, … by its place where not given."},
+	{Table: "sightline.fit.cloud", Name: "v", Type: OneOf, Unit: "km/s", Range: "[-30000, 30000]", Required: true, Meaning: "Velocity, in the frame of the results."},
+	{Table: "sightline.fit.cloud", Name: "b", Type: OneOf, Unit: "km/s", Range: "(0, 1000]", Meaning: "Doppler parameter of its species; starts at b_atom or b_molecule where not given."},
+	{Table: "sightline.fit.cloud", Name: "T", Type: OneOf, Unit: "K", Range: "(0, 1e7]", Meaning: "Temperature, with thermal; starts at 100 where not given."},
+	{Table: "sightline.fit.cloud", Name: "turbulence", Type: OneOf, Unit: "km/s", Range: "[0, 1000]", Meaning: "Turbulent part of b, with thermal; starts at 1 where not given."},
+	{Table: "sightline.fit.cloud", Name: "columns", Type: BySpecies, Unit: "log cm⁻²", Range: "[4, 25]", Meaning: "The species that it holds, with log N of each; all species of the lines, starting from their optical depths, where not given."},
+	{Table: "sightline.fit.cloud", Name: "species_b", Type: BySpecies, Unit: "km/s", Range: "(0, 1000]", Meaning: "Species with a Doppler parameter of their own."},
+	{Table: "sightline.fit.cloud", Name: "species_v", Type: BySpecies, Unit: "km/s", Range: "[-30000, 30000]", Meaning: "Species with a velocity of their own."},
 
 	{Table: "sightline.hydrogen", Name: "logN_HI", Type: Number, Unit: "log cm⁻²", Range: "[10, 25]", Meaning: "N(H I)."},
 	{Table: "sightline.hydrogen", Name: "logN_HI_err", Type: Number, Unit: "dex", Range: "(0, 5]", Meaning: "Its 1σ error. Required with it."},
@@ -109,6 +136,15 @@ var schema = []KeyDoc{
 	{Table: "E_BV", Name: "value", Type: Number, Unit: "mag", Range: "[-1, 20]", Required: true, Meaning: "E(B−V)."},
 	{Table: "E_BV", Name: "err", Type: Number, Unit: "mag", Range: "(0, 20]", Meaning: "1σ error; unknown where not given."},
 	{Table: "E_BV", Name: "source", Type: Text, Meaning: "Where it comes from."},
+
+	{Table: "parameter", Name: "start", Type: Number, Meaning: "Where the fit starts; prior, or the middle of range, where not given."},
+	{Table: "parameter", Name: "fixed", Type: Switch, Meaning: "true: it is known to be start."},
+	{Table: "parameter", Name: "range", Type: Pair, Meaning: "Bounds; the fit says so where it stops at one."},
+	{Table: "parameter", Name: "prior", Type: Number, Meaning: "What is known of it beforehand, as a Gaussian."},
+	{Table: "parameter", Name: "prior_err", Type: Number, Range: "(0, ∞)", Meaning: "Its 1σ error."},
+	{Table: "parameter", Name: "to", Type: Text, Meaning: "It follows that of another cloud (v, b, T, turbulence) or of another species of the cloud (columns, species_b, species_v), and has nothing of its own."},
+	{Table: "parameter", Name: "ratio", Type: Number, Range: "(0, ∞)", Meaning: "How many times the other it is (of N itself for columns); 1 where not given."},
+	{Table: "parameter", Name: "shift", Type: Number, Unit: "km/s", Meaning: "How far from the other it is, for velocities; 0 where not given."},
 
 	{Table: "columns", Name: "wave", Type: Text, Meaning: "Wavelength."},
 	{Table: "columns", Name: "flux", Type: Text, Meaning: "Flux."},

@@ -14,6 +14,7 @@ type common struct {
 	sightline Sightline
 	spectrum  Spectrum
 	lines     []map[string]any
+	fits      []map[string]any
 }
 
 func (c common) newSightline() Sightline {
@@ -37,11 +38,11 @@ func (l *loader) common(m map[string]any) common {
 			}
 		}
 	}
-	c := common{sightline: Sightline{by: origins{}}, spectrum: Spectrum{by: origins{}}, lines: l.tables("defaults", "line", m)}
+	c := common{sightline: Sightline{by: origins{}}, spectrum: Spectrum{by: origins{}}, lines: l.tables("defaults", "line", m), fits: l.tables("defaults", "fit", m)}
 	l.defaults("sightline", &c.sightline, c.sightline.by)
 	l.fill("defaults", "sightline", m, &c.sightline, c.sightline.by, "defaults")
 	spectrum := l.table("defaults", "spectrum", m)
-	for _, k := range []string{"file", "continuum_file"} {
+	for _, k := range []string{"file", "continuum_file"} { // line_spread may be one for all
 		if _, ok := spectrum[k]; ok {
 			l.bad("defaults: spectrum: "+k, "move it to the [[sightline.spectrum]]", "cannot be the same for all spectra")
 		}
@@ -56,7 +57,7 @@ func (l *loader) common(m map[string]any) common {
 	return c
 }
 
-// A rawLine is a transition as written, before its name is looked up.
+// A rawLine is a transition or a fit as written, before its names are looked up.
 type rawLine struct {
 	where string
 	m     map[string]any
@@ -84,6 +85,12 @@ func (l *loader) layer(s *Sightline, def common, where string, m map[string]any,
 			continue
 		}
 		s.raw = append(s.raw, rawLine{place, t})
+	}
+	if list := l.tables(where, "fit", m); list != nil {
+		s.rawFits = []rawLine{}
+		for i, t := range list {
+			s.rawFits = append(s.rawFits, rawLine{nth(at(where, "fit"), i), t})
+		}
 	}
 	if _, ok := m["lines"]; ok {
 		s.linesAt = at(where, "lines")
@@ -207,6 +214,7 @@ func (l *loader) finish(s *Survey, x *Sightline, def common, where string) {
 		x.Lines = append(x.Lines, ln)
 	}
 	l.checkSightline(s, x, where, len(own) > 0 || x.linesAt != "")
+	l.fits(x, def)
 	x.raw, x.Named, x.linesAt = nil, nil, ""
 }
 

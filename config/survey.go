@@ -44,6 +44,7 @@ type Sightline struct {
 	MaxDegree    int        `json:"max_degree" toml:"max_degree"`
 	Spectra      []Spectrum `json:"spectra"`
 	Lines        []Line     `json:"lines"` // only those to use
+	Fits         []Fit      `json:"fits,omitempty"`
 	Hydrogen     *Hydrogen  `json:"hydrogen,omitempty"`
 	Columns      []Column   `json:"columns,omitempty"`
 	Adopt        []Adopt    `json:"adopt,omitempty"`
@@ -52,6 +53,7 @@ type Sightline struct {
 	Named   []string `json:"-" toml:"lines"` // empty after loading
 	linesAt string
 	raw     []rawLine
+	rawFits []rawLine
 	by      origins
 }
 
@@ -77,6 +79,7 @@ type Spectrum struct {
 	Correction      *float64     `json:"correction,omitempty" toml:"correction"`         // km/s to add to reach the survey's frame
 	R               float64      `json:"resolving_power" toml:"resolving_power"`         // λ/FWHM; 0: the header's
 	RErr            float64      `json:"resolving_power_err" toml:"resolving_power_err"` // relative
+	LineSpread      string       `json:"line_spread,omitempty" toml:"line_spread"`       // file; "": a Gaussian of R
 	Normalised      *bool        `json:"normalised,omitempty" toml:"normalised"`
 	ContinuumErr    float64      `json:"continuum_err" toml:"continuum_err"` // relative; 0 not given
 	ContinuumColumn string       `json:"continuum_column,omitempty" toml:"continuum_column"`

@@ -107,6 +107,14 @@ func (l *loader) set(where string, k KeyDoc, x any, f reflect.Value) bool {
 			return l.wrongType(where, k, x)
 		}
 		return l.read(where, k.Name, m, f.Addr().Interface(), nil, "")
+	case OneOf:
+		return l.parameter(where, k, x, f.Addr().Interface().(*Parameter))
+	case BySpecies:
+		ps, ok := l.parameters(where, k, x)
+		if !ok {
+			return false
+		}
+		f.Set(reflect.ValueOf(ps))
 	default:
 		panic("config: no field can take key " + k.Name)
 	}
@@ -142,6 +150,10 @@ func (l *loader) wrongType(where string, k KeyDoc, x any) bool {
 		fix = fmt.Sprintf("write %s = {%s}", k.Name, strings.Join(in, ", "))
 	case Switch:
 		fix = "write true or false, without quotes"
+	case OneOf:
+		fix = fmt.Sprintf("write %s = 1.5, or %s = {start = 1.5, range = [1, 2]}", k.Name, k.Name)
+	case BySpecies:
+		fix = fmt.Sprintf("write %s = {\"Na I\" = 12.5}", k.Name)
 	default:
 		fix = "write it without quotes"
 	}

@@ -1,0 +1,469 @@
+package config
+
+import (
+	"fmt"
+	"slices"
+	"strings"
+
+	"lacuna/atomic"
+	"lacuna/internal/oops"
+)
+
+// A Fit asks for clouds that explain several lines of a sightline together.
+type Fit struct {
+	Name            string     `json:"name" toml:"name"`
+	Lines           []string   `json:"lines" toml:"lines"`             // canonical names, among the sightline's
+	Window          [2]float64 `json:"window" toml:"window"`           // km/s, for all lines; {0, 0}: each line's own
+	Degree          int        `json:"degree" toml:"degree"`           // of the continuum in the fit; −1: as for the line's width
+	Auto            bool       `json:"auto" toml:"auto"`               // the number of clouds is found
+	Most            int        `json:"most" toml:"most"`               // clouds at most, with Auto
+	ShareB          bool       `json:"share_b" toml:"share_b"`         // the species of a cloud have one b
+	ShareV          bool       `json:"share_v" toml:"share_v"`         // and one v
+	Offset          []string   `json:"offset,omitempty" toml:"offset"` // species with a velocity offset, the same in all clouds
+	Thermal         bool       `json:"thermal" toml:"thermal"`         // b² = 2kT/m + turbulence²
+	VelocityZeroErr float64    `json:"velocity_zero_err" toml:"velocity_zero_err"`
+	Telluric        string     `json:"telluric" toml:"telluric"` // mask, keep
+	Note            string     `json:"note,omitempty" toml:"note"`
+	Clouds          []FitCloud `json:"clouds,omitempty"` // none with Auto
+
+	by origins
+}
+
+// A FitCloud is where one cloud starts, and what is known of it.
+type FitCloud struct {
+	Name       string     `json:"name" toml:"name"`
+	V          Parameter  `json:"v" toml:"v"`                             // km/s
+	B          *Parameter `json:"b,omitempty" toml:"b"`                   // km/s; nil with Fit.Thermal
+	T          *Parameter `json:"T,omitempty" toml:"T"`                   // K, with Fit.Thermal
+	Turbulence *Parameter `json:"turbulence,omitempty" toml:"turbulence"` // km/s, with Fit.Thermal
+	Columns    Parameters `json:"columns,omitempty" toml:"columns"`       // log N of its species; nil: all, starts from the data
+	SpeciesB   Parameters `json:"species_b,omitempty" toml:"species_b"`   // of species with a b of their own
+	SpeciesV   Parameters `json:"species_v,omitempty" toml:"species_v"`   // and a v of their own
+	by         origins
+}
+
+// Parameters are parameters by species.
+type Parameters map[string]Parameter
+
+// A Parameter is what is known of one number before a fit: where it starts, and a
+// range, a prior, or that it is known; or that it follows another one.
+type Parameter struct {
+	Start    *float64    `json:"start,omitempty" toml:"start"`
+	Fixed    bool        `json:"fixed,omitempty" toml:"fixed"`
+	Range    *[2]float64 `json:"range,omitempty" toml:"range"`
+	Prior    *float64    `json:"prior,omitempty" toml:"prior"`
+	PriorErr float64     `json:"prior_err,omitempty" toml:"prior_err"`
+	To       string      `json:"to,omitempty" toml:"to"` // follows the same parameter of this cloud or species
+	Ratio    *float64    `json:"ratio,omitempty" toml:"ratio"`
+	Shift    *float64    `json:"shift,omitempty" toml:"shift"` // km/s
+}
+
+// StartAt returns a free parameter that starts at x.
+func StartAt(x float64) Parameter { return Parameter{Start: &x} }
+
+// parameter reads a number, or a table of what is known of it, as key k takes it.
+func (l *loader) parameter(where string, k KeyDoc, x any, p *Parameter) bool {
+	m, ok := x.(map[string]any)
+	if !ok {
+		switch x.(type) {
+		case int64, float64:
+		default:
+			return l.wrongType(where, k, x)
+		}
+		n, ok := l.number(where, k, x)
+		if ok {
+			p.Start = &n
+		}
+		return ok
+	}
+	n := len(l.errs)
+	if !l.read(where, "parameter", m, p, nil, "") {
+		return false
+	}
+	inside := func(name string, v *float64) {
+		if v != nil {
+			l.inRange(at(where, name), k, *v)
+		}
+	}
+	inside("start", p.Start)
+	inside("prior", p.Prior)
+	if p.Range != nil {
+		inside("range", &p.Range[0])
+		inside("range", &p.Range[1])
+	}
+	if len(l.errs) == n {
+		l.checkParameter(where, k, p)
+	}
+	return len(l.errs) == n
+}
+
+// checkParameter compares the keys of a parameter with each other, and fills in its
+// start.
+func (l *loader) checkParameter(where string, k KeyDoc, p *Parameter) {
+	velocity := k.Name == "v" || k.Name == "species_v"
+	if p.To != "" {
+		switch {
+		case p.Start != nil || p.Fixed || p.Range != nil || p.Prior != nil || p.PriorErr != 0:
+			l.bad(where, "keep to, with ratio or shift, or leave it out", "a parameter that follows another has no start, range or prior of its own")
+		case velocity && p.Ratio != nil:
+			l.bad(at(where, "ratio"), "give shift in km/s", "velocities follow each other by a shift, not by a ratio")
+		case !velocity && p.Shift != nil:
+			l.bad(at(where, "shift"), "give ratio", "only velocities follow each other by a shift")
+		}
+		return
+	}
+	if p.Ratio != nil || p.Shift != nil {
+		l.bad(where, "name the cloud or species that it follows: to = \"…\"", "ratio and shift belong to a parameter that follows another")
+	}
+	if (p.Prior == nil) != (p.PriorErr == 0) {
+		l.bad(where, "give both, or neither", "one of prior and prior_err is missing")
+		return
+	}
+	if p.Start == nil {
+		switch {
+		case p.Fixed:
+			l.bad(at(where, "start"), "add the value as start", "missing: fixed to what?")
+			return
+		case p.Prior != nil:
+			p.Start = p.Prior
+		case p.Range != nil:
+			middle := (p.Range[0] + p.Range[1]) / 2
+			p.Start = &middle
+		default:
+			l.bad(at(where, "start"), "add start, range, or prior with prior_err", "missing")
+			return
+		}
+	}
+	switch {
+	case p.Fixed && (p.Range != nil || p.Prior != nil):
+		l.bad(where, "leave fixed out, or range and prior", "a fixed parameter has neither range nor prior")
+	case p.Range != nil && !(*p.Start >= p.Range[0] && *p.Start <= p.Range[1]):
+		l.bad(at(where, "range"), "widen it, or start inside", "[%g, %g] excludes the start %g", p.Range[0], p.Range[1], *p.Start)
+	}
+}
+
+// parameters reads a table of parameters by species; their names are checked where
+// the lines are known.
+func (l *loader) parameters(where string, k KeyDoc, x any) (Parameters, bool) {
+	m, ok := x.(map[string]any)
+	if !ok {
+		return nil, l.wrongType(where, k, x)
+	}
+	out, good := Parameters{}, true
+	for _, name := range sortedKeys(m) {
+		var p Parameter
+		if why := badText(name); why != "" {
+			l.bad(where, "name a species", "%s %s", show(name), why)
+			good = false
+			continue
+		}
+		if !l.parameter(at(where, name), k, m[name], &p) {
+			good = false
+			continue
+		}
+		out[name] = p
+	}
+	return out, good
+}
+
+// fits makes the fits of a sightline, once its lines are known: its own, or those of
+// [defaults] as far as it has their lines.
+func (l *loader) fits(x *Sightline, def common) {
+	for _, r := range x.rawFits {
+		l.fit(x, r.where, r.m, true)
+	}
+	if x.rawFits == nil {
+		for i, m := range def.fits {
+			l.fit(x, nth("defaults: fit", i), m, false)
+		}
+	}
+	x.rawFits = nil
+}
+
+func (l *loader) fit(x *Sightline, where string, m map[string]any, own bool) {
+	f := Fit{by: origins{}}
+	origin := "defaults"
+	if own {
+		origin = ""
+	}
+	l.defaults("sightline.fit", &f, f.by)
+	good := l.read(where, "sightline.fit", m, &f, f.by, origin)
+	clouds := l.tables(where, "cloud", m)
+	for i, t := range clouds {
+		c := FitCloud{by: origins{}}
+		place := nth(at(where, "cloud"), i)
+		good = l.read(place, "sightline.fit.cloud", t, &c, c.by, origin) && good
+		if c.Name == "" {
+			c.Name, c.by["name"] = fmt.Sprintf("cloud %d", i+1), "default"
+		}
+		f.Clouds = append(f.Clouds, c)
+	}
+	if !good {
+		return
+	}
+	n := len(l.errs)
+	lines := l.fitLines(x, &f, at(where, "lines"), own)
+	if len(lines) == 0 {
+		return // said, or not of this sightline
+	}
+	carriers := carriersOf(lines)
+	if f.Name == "" {
+		f.Name, f.by["name"] = strings.Join(carriers, " + "), "the species"
+	}
+	if slices.ContainsFunc(x.Fits, func(o Fit) bool { return o.Name == f.Name }) {
+		l.bad(where, "give each its own name", "two fits are called %s", show(f.Name))
+	}
+	l.checkFit(x, &f, where, lines, carriers)
+	if len(l.errs) == n {
+		x.Fits = append(x.Fits, f)
+	}
+}
+
+// fitLines looks up the lines of a fit among those that the sightline measures.
+func (l *loader) fitLines(x *Sightline, f *Fit, where string, own bool) []atomic.Line {
+	if len(f.Lines) == 0 {
+		l.bad(where, `name the transitions that are fitted together: ["Na I 5889.95", "Na I 5895.92"]`, "none")
+		return nil
+	}
+	var have []string
+	for _, ln := range x.Lines {
+		if !slices.Contains(have, ln.Name) {
+			have = append(have, ln.Name)
+		}
+	}
+	var lines []atomic.Line
+	var names []string
+	for i, name := range f.Lines {
+		a, ok := l.find(nth(where, i), name)
+		switch {
+		case !ok:
+		case slices.Contains(names, a.Name):
+			l.bad(nth(where, i), "keep one of them", "%s is there twice", a.Name)
+		case slices.Contains(have, a.Name):
+			lines, names = append(lines, a), append(names, a.Name)
+		case own:
+			fix := "add it to lines: what is fitted is also measured"
+			if slices.Contains(x.Skipped, a.Name) {
+				fix = "use = false leaves it out: leave it out here too"
+			} else if near := oops.Nearest(a.Name, have, 2); len(near) > 0 {
+				fix += "; or did you mean " + strings.Join(near, " or ") + "?"
+			}
+			l.bad(nth(where, i), fix, "%s is not among the lines of the sightline", a.Name)
+		}
+	}
+	f.Lines = names
+	return lines
+}
+
+func carriersOf(lines []atomic.Line) []string {
+	var out []string
+	for _, a := range lines {
+		if !slices.Contains(out, a.Carrier()) {
+			out = append(out, a.Carrier())
+		}
+	}
+	return out
+}
+
+// checkFit compares the keys of a fit with each other and with its lines.
+func (l *loader) checkFit(x *Sightline, f *Fit, where string, lines []atomic.Line, carriers []string) {
+	switch {
+	case f.Auto && len(f.Clouds) > 0:
+		l.bad(where, "keep auto = true or the clouds", "auto finds the clouds, yet %d are given", len(f.Clouds))
+	case !f.Auto && len(f.Clouds) == 0:
+		l.bad(where, "add [[sightline.fit.cloud]] with v = …, or auto = true", "no cloud to start from")
+	}
+	if f.Thermal && !f.ShareB {
+		l.bad(at(where, "share_b"), "leave it out, or thermal", "with thermal the b of each species follows from temperature and turbulence")
+	}
+	if len(f.Offset) > 0 && !f.ShareV {
+		l.bad(at(where, "share_v"), "leave it out, or offset", "an offset is between species that share their velocities")
+	}
+	for i, s := range f.Offset {
+		if s = l.among(nth(at(where, "offset"), i), s, carriers); s == "" {
+			continue
+		}
+		if slices.Contains(f.Offset[:i], s) {
+			l.bad(nth(at(where, "offset"), i), "keep one of them", "%s is there twice", s)
+		}
+		f.Offset[i] = s
+	}
+	if len(f.Offset) > 0 && len(f.Offset) >= len(carriers) {
+		l.bad(at(where, "offset"), "leave out the species that the others are offset from", "every species has an offset")
+	}
+	lo, hi := f.Window[0], f.Window[1]
+	if f.Window == [2]float64{} {
+		lo, hi = windowsOf(x, f.Lines)
+	}
+	var held []string
+	for i := range f.Clouds {
+		c := &f.Clouds[i]
+		place := nth(at(where, "cloud"), i)
+		for _, o := range f.Clouds[:i] {
+			if o.Name == c.Name {
+				l.bad(place, "give each its own name", "two clouds are called %s", show(c.Name))
+			}
+		}
+		if v := c.V.Start; v != nil && lo < hi && !(*v >= lo && *v <= hi) { // a window that is missing is told elsewhere
+			l.bad(at(place, "v"), "start inside, or widen the window", "%g km/s lies outside the window [%g, %g] of every line", *v, lo, hi)
+		}
+		l.cloudParameters(x, f, c, place, lines)
+		for _, s := range l.cloudSpecies(f, c, place, carriers) {
+			if !slices.Contains(held, s) {
+				held = append(held, s)
+			}
+		}
+	}
+	for _, s := range carriers {
+		if len(f.Clouds) > 0 && !slices.Contains(held, s) {
+			l.bad(where, "put it into columns of a cloud, or take its lines out", "no cloud holds %s", s)
+		}
+	}
+}
+
+// windowsOf is the range of the windows of the named lines.
+func windowsOf(x *Sightline, names []string) (lo, hi float64) {
+	first := true
+	for _, ln := range x.Lines {
+		if !slices.Contains(names, ln.Name) {
+			continue
+		}
+		if first {
+			lo, hi, first = ln.Window[0], ln.Window[1], false
+		}
+		lo, hi = min(lo, ln.Window[0]), max(hi, ln.Window[1])
+	}
+	return lo, hi
+}
+
+// among returns a species as the program spells it, if it is one of the fit's.
+func (l *loader) among(where, name string, carriers []string) string {
+	for _, c := range carriers {
+		if plain(c) == plain(name) {
+			return c
+		}
+	}
+	l.bad(where, "one of "+strings.Join(carriers, ", "), "no line of the fit is one of %s", show(name))
+	return ""
+}
+
+// cloudParameters checks v, b, T and turbulence of a cloud, and fills in where those
+// that are not given start.
+func (l *loader) cloudParameters(x *Sightline, f *Fit, c *FitCloud, where string, lines []atomic.Line) {
+	start := func(p **Parameter, key string, value float64, from string) {
+		if *p == nil {
+			q := StartAt(value)
+			*p, c.by[key] = &q, from
+		}
+	}
+	if f.Thermal {
+		if c.B != nil {
+			l.bad(at(where, "b"), "leave it out, or thermal", "with thermal, b follows from T and turbulence")
+		}
+		known := func(p *Parameter) bool { return p != nil && (p.Fixed || p.Prior != nil || p.To != "") }
+		if !severalMasses(lines) && !known(c.T) && !known(c.Turbulence) {
+			l.bad(where, "fix T or turbulence, or give one a prior, or add lines of a lighter or heavier species",
+				"with species of one mass alone, temperature cannot be told from turbulence")
+		}
+		start(&c.T, "T", 100, "default")
+		start(&c.Turbulence, "turbulence", 1, "default")
+	} else {
+		if c.T != nil || c.Turbulence != nil {
+			l.bad(where, "add thermal = true to the fit, or give b in their place", "T and turbulence are given, yet b is not split into them")
+		}
+		b, from := x.BAtom, "b_atom"
+		if !slices.ContainsFunc(lines, func(a atomic.Line) bool { return !a.Molecule() }) {
+			b, from = x.BMolecule, "b_molecule"
+		}
+		start(&c.B, "b", b, from)
+	}
+	var clouds []string
+	for _, o := range f.Clouds {
+		if o.Name != c.Name {
+			clouds = append(clouds, o.Name)
+		}
+	}
+	for _, p := range []struct {
+		key string
+		par *Parameter
+	}{{"v", &c.V}, {"b", c.B}, {"T", c.T}, {"turbulence", c.Turbulence}} {
+		if p.par == nil || p.par.To == "" || slices.Contains(clouds, p.par.To) {
+			continue
+		}
+		fix := "there is no other cloud"
+		if len(clouds) > 0 {
+			fix = "one of " + strings.Join(clouds, ", ")
+		}
+		l.bad(at(where, p.key), fix, "%s is not another cloud of this fit", show(p.par.To))
+	}
+}
+
+func severalMasses(lines []atomic.Line) bool {
+	for _, a := range lines[1:] {
+		if a.Mass() != lines[0].Mass() {
+			return true
+		}
+	}
+	return false
+}
+
+// cloudSpecies checks the species of a cloud and returns them.
+func (l *loader) cloudSpecies(f *Fit, c *FitCloud, where string, carriers []string) []string {
+	spelled := func(key string, ps Parameters, among []string) Parameters {
+		if ps == nil {
+			return nil
+		}
+		out := Parameters{}
+		for _, name := range sortedSpecies(ps) {
+			s := l.among(at(where, key), name, among)
+			if s == "" {
+				continue
+			}
+			if _, twice := out[s]; twice {
+				l.bad(at(where, key), "keep one of them", "%s is there twice", s)
+			}
+			out[s] = ps[name]
+		}
+		for _, s := range sortedSpecies(out) {
+			p := out[s]
+			if p.To == "" {
+				continue
+			}
+			to := l.among(at(at(where, key), s), p.To, among)
+			if to == s {
+				l.bad(at(at(where, key), s), "name another species", "it follows itself")
+			}
+			p.To = to
+			out[s] = p
+		}
+		return out
+	}
+	c.Columns = spelled("columns", c.Columns, carriers)
+	held := carriers
+	if c.Columns != nil {
+		held = sortedSpecies(c.Columns)
+		if len(held) == 0 {
+			l.bad(at(where, "columns"), "name its species, or leave columns out for all of them", "the cloud holds nothing")
+			return carriers
+		}
+	}
+	c.SpeciesB, c.SpeciesV = spelled("species_b", c.SpeciesB, held), spelled("species_v", c.SpeciesV, held)
+	if f.Thermal && c.SpeciesB != nil {
+		l.bad(at(where, "species_b"), "leave it out, or thermal", "with thermal, b follows from T and turbulence")
+	}
+	for _, s := range sortedSpecies(c.SpeciesV) {
+		if slices.Contains(f.Offset, s) {
+			l.bad(at(where, "species_v"), "keep one of them", "%s has an offset in all clouds already", s)
+		}
+	}
+	return held
+}
+
+func sortedSpecies(ps Parameters) []string {
+	out := make([]string, 0, len(ps))
+	for s := range ps {
+		out = append(out, s)
+	}
+	slices.Sort(out)
+	return out
+}
