@@ -76,6 +76,9 @@ func (r *reader) axis(h *fits.HDU, c cards, n int64) (law, error) {
 			return w, h.Fail(fmt.Sprintf("%s says log10 wavelengths but CRVAL1=%g: 10^%g is not a wavelength", flagBy, crval, crval), `is the axis linear? Say layout = "linear"`)
 		}
 	}
+	if strings.HasSuffix(strings.ToUpper(ctype), "-TAB") {
+		return r.tabAxis(h, c, w, func(p float64) float64 { return crval + step*(p-crpix) })
+	}
 	unit, conv, err := r.axisUnit(h, c, ctype, crval, crval+step*(float64(n)-1), log10, &w)
 	if err != nil {
 		return w, err

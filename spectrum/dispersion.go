@@ -107,23 +107,31 @@ func (f *curve) series(n float64) float64 {
 // table interpolates linearly between the nearest entries, and half a pixel
 // beyond the ends.
 func (f *curve) table(p float64) float64 {
-	n := len(f.c)
-	x := func(k int) float64 { return float64(k + 1) }
-	if f.kind == sampled {
-		x = func(k int) float64 { return f.x[k] }
-	}
-	if !(p >= x(0)-0.5) || !(p <= x(n-1)+0.5) {
+	if !(p >= f.pixel(0)-0.5) || !(p <= f.pixel(len(f.c)-1)+0.5) {
 		return math.NaN()
 	}
-	lo, hi := 0, n-2 // the last k with x(k) ≤ p
+	return f.between(p)
+}
+
+// pixel returns the pixel of entry k.
+func (f *curve) pixel(k int) float64 {
+	if f.kind == sampled {
+		return f.x[k]
+	}
+	return float64(k + 1)
+}
+
+// between lies on the straight line through the two entries next to p.
+func (f *curve) between(p float64) float64 {
+	lo, hi := 0, len(f.c)-2 // lo: the last entry with pixel ≤ p
 	for lo < hi {
-		if mid := (lo + hi + 1) / 2; x(mid) <= p {
+		if mid := (lo + hi + 1) / 2; f.pixel(mid) <= p {
 			lo = mid
 		} else {
 			hi = mid - 1
 		}
 	}
-	t := (p - x(lo)) / (x(lo+1) - x(lo))
+	t := (p - f.pixel(lo)) / (f.pixel(lo+1) - f.pixel(lo))
 	return f.c[lo] + t*(f.c[lo+1]-f.c[lo])
 }
 

@@ -24,12 +24,20 @@ func family(c cards, layout string) instrument {
 		return instrument{"HST", frame.Vacuum, ""}
 	case strings.HasPrefix(tel, "FUSE"):
 		return instrument{"FUSE", frame.Vacuum, frame.Heliocent}
-	case strings.HasPrefix(tel, "IUE"):
+	case strings.HasPrefix(tel, "IUE"), layout == layoutMXHI, layout == layoutMXLO:
 		return instrument{"IUE", frame.Vacuum, frame.Heliocent}
 	case strings.HasPrefix(tel, "SDSS") || layout == layoutLogLam:
 		return instrument{"SDSS", frame.Vacuum, frame.Heliocent}
+	case layout == layoutKOA, layout == layoutOrders && strings.HasPrefix(strings.ToUpper(c.str("INSTRUME")), "HIRES"):
+		return instrument{"KOA", frame.Vacuum, frame.Heliocent}
+	case layout == layoutE2DS:
+		return instrument{"DRS pipeline, e2ds", frame.Air, frame.Topocentric}
+	case layout == layoutWaveImage:
+		return instrument{"", frame.UnknownMedium, frame.Unknown}
 	case drs(c) != "":
-		return instrument{"DRS pipeline", frame.Air, frame.Barycentric} // s1d; e2ds is another layout
+		return instrument{"DRS pipeline, s1d", frame.Air, frame.Barycentric}
+	case c.has("ESO QC BERV"): // newer pipelines say the medium in the names of columns
+		return instrument{"DRS pipeline, s1d", frame.UnknownMedium, frame.Barycentric}
 	case c.match(func(k string) bool { return strings.HasPrefix(k, "ESO PRO ") }) != "" || origin == "ESO" && c.has("PRODCATG"):
 		return instrument{"ESO pipeline", frame.Air, ""}
 	case c.has("WAT0_001") || strings.Contains(origin, "IRAF") && c.has("DC-FLAG"):
@@ -50,6 +58,10 @@ type clue struct {
 	ctype, ucd, column string
 	meta               map[string]string // of a text header: "medium", "frame"
 	z                  float64           // Doppler factor 1+z of a multispec line, already divided out
+
+	medium frame.Medium // of a layout whose names say it
+	frame  frame.Kind
+	by     string
 }
 
 // decide sets medium, frame and corrections of a segment whose wavelengths are read.
@@ -75,11 +87,11 @@ func (r *reader) medium(c cards, k clue, in instrument, first float64) (frame.Me
 	case "FREQ", "ENER", "WAVN":
 		return frame.Vacuum, "CTYPE1 = " + k.ctype
 	}
-	if strings.HasPrefix(strings.ToLower(k.ucd), "em.wl") {
-		if strings.Contains(strings.ToLower(k.ucd), "obs.atmos") {
-			return frame.Air, "UCD " + k.ucd
-		}
-		return frame.Vacuum, "UCD " + k.ucd
+	if k.medium != frame.UnknownMedium {
+		return k.medium, k.by
+	}
+	if m := ucdMedium(k.ucd); m != frame.UnknownMedium {
+		return m, "UCD " + k.ucd
 	}
 	for _, key := range []string{"AIRORVAC", "WAVETYPE", "VACUUM"} {
 		v := strings.ToLower(c.str(key))
@@ -114,6 +126,25 @@ func (r *reader) medium(c cards, k clue, in instrument, first float64) (frame.Me
 	return frame.UnknownMedium, "the file does not say"
 }
 
+// ucdMedium reads the medium from a UCD: em.wl is vacuum, em.wl;obs.atmos air. A
+// word that is not known may be a damaged obs.atmos: then it says nothing.
+func ucdMedium(ucd string) frame.Medium {
+	m := frame.UnknownMedium
+	for i, word := range strings.Split(strings.ToLower(strings.ReplaceAll(ucd, " ", "")), ";") {
+		switch {
+		case i == 0 && word == "em.wl":
+			m = frame.Vacuum
+		case i == 0:
+			return frame.UnknownMedium
+		case word == "obs.atmos":
+			m = frame.Air
+		case !strings.HasPrefix(word, "meta.") && word != "em.wl.central" && word != "src.main":
+			return frame.UnknownMedium
+		}
+	}
+	return m
+}
+
 func (r *reader) velocityFrame(s *Segment, c cards, k clue, in instrument) (frame.Kind, string) {
 	if r.o.Frame != frame.Unknown {
 		return r.o.Frame, "user"
@@ -133,6 +164,9 @@ func (r *reader) velocityFrame(s *Segment, c cards, k clue, in instrument) (fram
 			return kind, "frame in the header"
 		}
 		s.note("frame '%s' in the header is not known", v)
+	}
+	if k.frame != frame.Unknown {
+		return k.frame, k.by
 	}
 	if in.name == "HST" {
 		switch v := strings.ToUpper(c.str("HELCORR")); v {

@@ -80,6 +80,11 @@ func (r *reader) keep(s Segment) {
 			}
 		}
 	}
+	for i := range parts {
+		if len(parts) > 1 { // a detector may end inside
+			parts[i].maskFiller()
+		}
+	}
 	r.s.Segments = append(r.s.Segments, parts...)
 }
 

@@ -74,7 +74,7 @@ func (r *reader) describe(c cards) {
 	}
 	if r.s.Object == "" {
 		// Calibration templates put a job name into OBJECT: ESO keeps the star apart.
-		for _, key := range []string{"ESO OBS TARG NAME", "TARGNAME", "OBJECT", "OBJNAME"} {
+		for _, key := range []string{"ESO OBS TARG NAME", "TARGNAME", "OBJECT", "OBJNAME", "TARGET", "LTARGET", "STARGET"} {
 			if v := c.str(key); v != "" {
 				r.s.Object = v
 				break

@@ -12,7 +12,7 @@ import (
 
 // partners are names of image extensions that belong to a flux image.
 var partners = map[string]string{"ERR": "error", "ERROR": "error", "SIGMA": "error", "ERRDATA": "error", "STAT": "variance", "VAR": "variance", "VARIANCE": "variance", "IVAR": "inverse variance",
-	"DQ": "mask", "QUAL": "mask", "QUALITY": "mask", "MASK": "mask", "FLAGS": "mask", "CONTINUUM": "continuum", "CONT": "continuum"}
+	"DQ": "mask", "QUAL": "mask", "QUALITY": "mask", "MASK": "mask", "FLAGS": "mask", "QUALDATA": "mask", "CONTINUUM": "continuum", "CONT": "continuum"}
 
 // images reads every image HDU with a spectral axis, each as its own segments;
 // extensions of errors and flags join the flux image of the same EXTVER. It
@@ -23,11 +23,24 @@ func (r *reader) images(hdus []*fits.HDU) (bool, error) {
 		if h.Kind != fits.Image || h.Err != nil || partners[strings.ToUpper(h.Name())] != "" && r.o.HDU == "" {
 			continue
 		}
+		if isWaveImage(h) && r.o.HDU == "" {
+			continue
+		}
+		if g, k := waveImage(h, r.file.HDUs); g != nil {
+			if r.o.HDU == "" && !isFluxName(h) && slices.ContainsFunc(hdus, func(f *fits.HDU) bool { return isFluxName(f) && slices.Equal(f.Axes, h.Axes) }) {
+				continue // steps, contamination …: the flux has its own image
+			}
+			done = true
+			if err := r.withWaves(h, g, k); err != nil {
+				return true, err
+			}
+			continue
+		}
 		if !r.hasAxis(h) {
 			continue
 		}
 		done = true
-		if err := r.image(h, hdus); err != nil {
+		if err := r.image(h); err != nil {
 			return true, err
 		}
 	}
@@ -60,8 +73,8 @@ type law struct {
 	notes []string
 }
 
-// image reads one flux image and what belongs to it.
-func (r *reader) image(h *fits.HDU, hdus []*fits.HDU) error {
+// image reads one flux image with a spectral axis, and what belongs to it.
+func (r *reader) image(h *fits.HDU) error {
 	c := cards{&h.Header}
 	all := r.headers(h)
 	r.describe(all)
@@ -75,8 +88,25 @@ func (r *reader) image(h *fits.HDU, hdus []*fits.HDU) error {
 	if err != nil {
 		return err
 	}
+	return r.imageLines(h, plan, clue{ctype: w.ctype}, func(aline, *Segment) ([]float64, error) {
+		wave := make([]float64, n)
+		for i := range wave {
+			wave[i] = w.at(float64(i + 1))
+			if !finite(wave[i]) || wave[i] <= 0 {
+				return nil, h.Fail(fmt.Sprintf("the spectral axis gives wavelength %g at pixel %d", wave[i], i+1), "correct CRVAL1 and CDELT1, or give layout and wave_unit")
+			}
+		}
+		return wave, nil
+	}, w.notes...)
+}
+
+// imageLines makes a segment of each line of plan. waves gives its wavelengths in
+// Å, nil where the line has none and is to be left out.
+func (r *reader) imageLines(h *fits.HDU, plan []aline, k clue, waves func(l aline, s *Segment) ([]float64, error), notes ...string) error {
+	all := r.headers(h)
+	_, lines := squeeze(h)
 	for _, l := range plan {
-		if r.o.Row > 0 && l.flux != int64(r.o.Row)-1 {
+		if r.o.Row > 0 && l.row() != int64(r.o.Row)-1 {
 			continue
 		}
 		label := l.label
@@ -85,17 +115,24 @@ func (r *reader) image(h *fits.HDU, hdus []*fits.HDU) error {
 			if h.Name() != "" {
 				label = h.Name()
 			}
-			if h.Index > 0 && (h.Name() == "" || r.sameNames(h, hdus)) {
+			if h.Index > 0 && (h.Name() == "" || r.sameNames(h)) {
 				label = fmt.Sprintf("%s (HDU %d)", label, h.Index)
 			}
 		}
-		s := Segment{Order: len(r.s.Segments) + 1, Label: label, Unit: all.str("BUNIT"), Source: Source{File: r.c.Name, HDU: h.Index, Row: int(l.flux) + 1}, Notes: slices.Clone(w.notes)}
+		s := Segment{Order: len(r.s.Segments) + 1, Label: label, Unit: all.str("BUNIT"), Source: Source{File: r.c.Name, HDU: h.Index, Row: int(l.flux) + 1}, Notes: slices.Clone(notes)}
 		if l.order != 0 {
 			s.Order = l.order
 		}
-		px := pixels{wave: make([]float64, n)}
-		for i := range px.wave {
-			px.wave[i] = w.at(float64(i + 1))
+		if h.Compression != "" {
+			s.note("unpacked from tiles (%s)", h.Compression)
+		}
+		var px pixels
+		var err error
+		if px.wave, err = waves(l, &s); err != nil {
+			return err
+		}
+		if px.wave == nil {
+			continue
 		}
 		if px.flux, err = h.Line(l.flux); err != nil {
 			return err
@@ -106,17 +143,13 @@ func (r *reader) image(h *fits.HDU, hdus []*fits.HDU) error {
 			}
 			px.err = picked{errKind: l.errKind}.sigma(px.err, px.flux)
 			s.note("line %d of the image is the error (%s)", l.err+1, l.by)
-		} else if err := r.partner(h, hdus, l.flux, &s, &px); err != nil {
+		} else if err := r.partner(h, l.flux, &s, &px); err != nil {
 			return err
 		}
-		if i := slices.IndexFunc(px.wave, func(x float64) bool { return !finite(x) || x <= 0 }); i >= 0 {
-			return h.Fail(fmt.Sprintf("the spectral axis gives wavelength %g at pixel %d", px.wave[i], i+1), "correct CRVAL1 and CDELT1, or give layout and wave_unit")
-		}
-		r.decide(&s, all, clue{ctype: w.ctype}, min(px.wave[0], px.wave[n-1]))
-		if err := s.fill(px); err != nil {
+		r.decide(&s, all, k, firstFinite(px.wave))
+		if err := r.finish(s, px); err != nil {
 			return err
 		}
-		r.keep(s)
 	}
 	if r.o.Row > 0 && int64(r.o.Row) > lines {
 		return h.Fail(fmt.Sprintf("there is no image line %d; it has %d", r.o.Row, lines), "choose another row")
@@ -124,13 +157,13 @@ func (r *reader) image(h *fits.HDU, hdus []*fits.HDU) error {
 	return nil
 }
 
-func (r *reader) sameNames(h *fits.HDU, hdus []*fits.HDU) bool {
-	return slices.ContainsFunc(hdus, func(g *fits.HDU) bool { return g != h && g.Kind == fits.Image && g.Name() == h.Name() })
+func (r *reader) sameNames(h *fits.HDU) bool {
+	return slices.ContainsFunc(r.file.HDUs, func(g *fits.HDU) bool { return g != h && g.Kind == fits.Image && g.Name() == h.Name() })
 }
 
 // partner attaches the error, mask and continuum extensions of equal EXTVER and size.
-func (r *reader) partner(h *fits.HDU, hdus []*fits.HDU, line int64, s *Segment, px *pixels) error {
-	for _, g := range hdus {
+func (r *reader) partner(h *fits.HDU, line int64, s *Segment, px *pixels) error {
+	for _, g := range r.file.HDUs {
 		what := partners[strings.ToUpper(g.Name())]
 		if g == h || g.Kind != fits.Image || g.Err != nil || what == "" || !slices.Equal(g.Axes, h.Axes) || g.Str("EXTVER") != h.Str("EXTVER") {
 			continue
@@ -155,10 +188,19 @@ func (r *reader) partner(h *fits.HDU, hdus []*fits.HDU, line int64, s *Segment, 
 // aline is one segment's lines in an image.
 type aline struct {
 	flux, err   int64 // from 0; err −1 none
-	aperture    int64 // line inside the plane of the flux
+	aperture    int64 // line inside the plane of the flux, if inPlane
+	inPlane     bool
 	errKind, by string
 	label       string
 	order       int
+}
+
+// row is the line that a user counts: of the plane of the flux.
+func (l aline) row() int64 {
+	if l.inPlane {
+		return l.aperture
+	}
+	return l.flux
 }
 
 // lines decides what the lines of an image are.

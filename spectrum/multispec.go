@@ -223,11 +223,7 @@ func (r *reader) aperture(h *fits.HDU, all cards, s Segment, l aline, d *dispers
 	px.place = func(i int) string { return fmt.Sprintf("pixel %d", first+i+1) }
 	s.compareRough(d)
 	r.decide(&s, all, clue{z: d.z}, firstFinite(px.wave))
-	if err := s.fill(px); err != nil {
-		return err
-	}
-	r.keep(s)
-	return nil
+	return r.finish(s, px)
 }
 
 // compareRough sets a function against w1 and dw, which describe its ends: where
@@ -338,7 +334,7 @@ func (r *reader) apertures(h *fits.HDU, c cards) ([]aline, error) {
 	}
 	var out []aline
 	for a := int64(0); a < aps; a++ {
-		l := aline{flux: flux*aps + a, err: -1, aperture: a, order: int(a) + 1}
+		l := aline{flux: flux*aps + a, err: -1, aperture: a, inPlane: true, order: int(a) + 1}
 		beam := ""
 		if words := strings.Fields(c.str(fmt.Sprintf("APNUM%d", a+1))); len(words) > 1 {
 			if k, err := strconv.Atoi(words[0]); err == nil {

@@ -7,7 +7,7 @@ import "lacuna/spectrum/frame"
 type Options struct {
 	HDU    string // index from 0 or EXTNAME of the HDU to read; "" the first that is a spectrum
 	Row    int    // 1-based row of a table or line of an image; 0 all
-	Layout string // law of an image axis: "linear", "log10" or "ln"; "" by the header
+	Layout string // law of an image axis: "linear", "log10" or "ln"; "orders" for a table that lists orders one after another; "" by the file
 
 	// Columns of a table by name or 1-based number; of a two-row image and of
 	// text without names by number. "none" drops the column.

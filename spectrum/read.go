@@ -15,11 +15,18 @@ import (
 const (
 	layoutImage     = "image"
 	layoutMultispec = "IRAF multispec"
+	layoutMXHI      = "IUE MXHI"
+	layoutMXLO      = "IUE MXLO"
+	layoutE2DS      = "e2ds of the DRS family"
+	layoutKOA       = "KOA polynomial image"
+	layoutWaveImage = "image with an image of wavelengths"
 	layoutSDP       = "ESO science data product"
 	layoutVector    = "row of array cells"
 	layoutX1D       = "HST x1d"
 	layoutLogLam    = "loglam table"
 	layoutRows      = "one row a pixel"
+	layoutVOTable   = "VOTable"
+	layoutOrders    = "list of orders"
 	layoutText      = "text"
 	layoutCSV       = "CSV"
 	layoutECSV      = "ECSV"
@@ -34,9 +41,11 @@ type reader struct {
 }
 
 // Read reads a spectrum. Its layout is recognised by content, never by the name:
-// FITS images with a linear or logarithmic axis, ESO science data products and
-// other tables with array cells, HST x1d, SDSS-like loglam tables, tables with
-// one row a pixel, ECSV, CSV and plain text; gzip of any of them.
+// FITS images with a linear or logarithmic axis or a lookup table, tile-compressed
+// too; IRAF multispec; orders with polynomials in the header (e2ds of the DRS
+// family, KOA); ESO science data products and other tables with array cells, HST
+// x1d, IUE MXHI and MXLO, SDSS-like loglam tables, tables with one row a pixel and
+// lists of orders; VOTable, ECSV, CSV and plain text; gzip of any of them.
 //
 // Wavelengths come out in Å, ascending, in the file's medium and frame, each with
 // a word on how that was decided; orders stay apart. Pixels are masked, never
@@ -110,7 +119,7 @@ func (r *reader) recognise() error {
 		}
 		return refuse(what, "the download failed; fetch the file again")
 	case bytes.HasPrefix(low, []byte("<votable")), bytes.HasPrefix(low, []byte("<?xml")):
-		return refuse("VOTable is not read yet", "save it as FITS, ECSV or CSV with any table program")
+		return r.votable()
 	case bytes.HasPrefix(head, []byte{0xff, 0xfe}), bytes.HasPrefix(head, []byte{0xfe, 0xff}):
 		return refuse("the text is UTF-16", "save it as UTF-8")
 	case bytes.IndexByte(head, 0) >= 0:
@@ -137,7 +146,7 @@ func (r *reader) fits() error {
 		}
 		hdus = []*fits.HDU{h}
 	}
-	for _, rule := range []func(h *fits.HDU) (layout string, read func() error){r.unread, r.tables} {
+	for _, rule := range []func(h *fits.HDU) (layout string, read func() error){r.special, r.tables} {
 		for _, h := range hdus {
 			if h.Err != nil {
 				continue
@@ -194,24 +203,18 @@ func (r *reader) headers(h *fits.HDU) cards {
 	return cards{&h.Header, &r.file.HDUs[0].Header}
 }
 
-// unread recognises layouts that are known but not read, so that they are not
-// taken for something else.
-func (r *reader) unread(h *fits.HDU) (string, func() error) {
-	c := cards{&h.Header}
-	not := func(what, fix string) (string, func() error) {
-		return what, func() error { return h.Fail(what+" is not read yet", fix) }
-	}
+// special recognises the layouts that would be taken for something else by the
+// rules for tables and images.
+func (r *reader) special(h *fits.HDU) (string, func() error) {
 	switch {
-	case sameText(h.Name(), "MEHI") || h.Col("STARTPIX") >= 0 && h.Col("DELTAW") >= 0:
-		return not("the IUE high-dispersion layout (MXHI)", "save wavelength, flux and quality of its orders as text")
-	case sameText(h.Name(), "MELO"):
-		return not("the IUE low-dispersion layout (MXLO)", "save wavelength, flux and sigma as text")
+	case isIUE(h) != "":
+		return isIUE(h), func() error { return r.iue(h) }
 	case r.isMultispec(h):
 		return layoutMultispec, func() error { return r.multispec(h) }
-	case c.match(func(k string) bool { return strings.HasSuffix(k, " DRS CAL TH COEFF LL0") }) != "" && len(h.Axes) == 2 && h.Axes[1] > 1:
-		return not("the e2ds layout of the DRS family", "use the s1d file, or save the orders as text")
-	case c.has("WV_0_01"):
-		return not("the KOA polynomial image", "use the extracted table")
+	case drsCoefficients(h) != "":
+		return layoutE2DS, func() error { return r.e2ds(h, drsCoefficients(h)) }
+	case isKOA(h):
+		return layoutKOA, func() error { return r.koa(h) }
 	}
 	return "", nil
 }

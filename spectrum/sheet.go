@@ -5,7 +5,6 @@ import (
 	"fmt"
 	"math"
 	"slices"
-	"strconv"
 	"strings"
 
 	"lacuna/internal/table"
@@ -48,8 +47,7 @@ func (r *reader) ecsv() error {
 	return r.fromSheet(sh)
 }
 
-// fromSheet makes segments of a text table: one, or one for each value of a
-// column named order.
+// fromSheet makes segments of a text table: one, or one for each order of a list.
 func (r *reader) fromSheet(sh *sheet) error {
 	where := func(what, fix string) error { return r.fail(sh.nameLine, fix, "%s", what) }
 	names := sh.names
@@ -73,34 +71,46 @@ func (r *reader) fromSheet(sh *sheet) error {
 		r.s.Notes = append(r.s.Notes, "column names from a comment: "+strings.Join(names, ", "))
 	}
 	r.textHeader(sh)
-	order := -1
-	for j, n := range names {
-		if sameText(n, "order", "segment") && j != p.wave && j != p.flux {
-			order = j
-		}
+	parts, err := r.sheetRuns(sh, p, names)
+	if err != nil {
+		return err
 	}
-	for a := 0; a < len(sh.rows); {
-		b := len(sh.rows)
-		label := "table"
-		number := len(r.s.Segments) + 1
-		if order >= 0 {
-			b = a + 1
-			for b < len(sh.rows) && sh.rows[b][order] == sh.rows[a][order] {
-				b++
-			}
-			label = "order " + sh.rows[a][order]
-			if k, err := strconv.Atoi(strings.TrimSpace(sh.rows[a][order])); err == nil {
-				number = k
-			}
+	for k, part := range parts {
+		if r.o.Row > 0 && r.o.Row != k+1 {
+			continue
 		}
-		if r.o.Row == 0 || r.o.Row == len(r.s.Segments)+1 {
-			if err := r.textSegment(sh, p, names, a, b, label, number); err != nil {
-				return err
-			}
+		label, number := "table", 1
+		if len(parts) > 1 || part.name != "" {
+			number, label = part.number(k)
 		}
-		a = b
+		if err := r.textSegment(sh, p, names, part.from, part.to, label, number); err != nil {
+			return err
+		}
 	}
 	return nil
+}
+
+// sheetRuns finds the orders in a text table.
+func (r *reader) sheetRuns(sh *sheet, p picked, names []string) ([]run, error) {
+	column := func(j int) []float64 {
+		if j < 0 {
+			return nil
+		}
+		v := make([]float64, len(sh.rows))
+		for i := range v {
+			v[i], _ = cell(sh.rows[i][j]) // what is no number is an error where it is read
+		}
+		return v
+	}
+	order, pixel := -1, -1
+	if sh.names != nil {
+		order = among(names, orderNames, p.wave, p.flux, p.err)
+		pixel = among(names, pixelNames, p.wave, p.flux, p.err)
+	}
+	if order < 0 {
+		return runs(len(sh.rows), nil, column(pixel), column(p.wave), r.o.Layout == byOrders), nil
+	}
+	return runs(len(sh.rows), func(i int) string { return sh.rows[i][order] }, nil, nil, false), nil
 }
 
 // byPosition reads wave, flux, err and mask or continuum by their places.
@@ -210,9 +220,5 @@ func (r *reader) textSegment(sh *sheet, p picked, names []string, a, b int, labe
 	if name, _ := columnName(names[p.flux]); slices.Contains([]string{"FLUXNORM", "NORMFLUX", "NORMALISEDFLUX", "NORMALIZEDFLUX"}, name) {
 		s.Normalised = true
 	}
-	if err := s.fill(px); err != nil {
-		return err
-	}
-	r.keep(s)
-	return nil
+	return r.finish(s, px)
 }

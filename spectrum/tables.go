@@ -3,14 +3,16 @@ package spectrum
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"lacuna/spectrum/fits"
+	"lacuna/spectrum/frame"
 )
 
 // tables recognises a table HDU.
 func (r *reader) tables(h *fits.HDU) (string, func() error) {
-	if h.Kind != fits.Binary && h.Kind != fits.Ascii || h.Rows == 0 {
+	if h.Kind != fits.Binary && h.Kind != fits.Ascii || h.Rows == 0 || r.isLookup(h) {
 		return "", nil
 	}
 	as := func(layout string, read func(*fits.HDU) error) (string, func() error) {
@@ -214,12 +216,12 @@ func (r *reader) add(h *fits.HDU, s *Segment, px pixels, p picked) error {
 	if err := r.toWave(s, px.wave, col.Unit, p.nameUnit, p.log10); err != nil {
 		return err
 	}
-	r.decide(s, r.headers(h), clue{ucd: col.UCD, column: col.Name}, firstFinite(px.wave))
-	if err := s.fill(px); err != nil {
-		return err
+	k := clue{ucd: col.UCD, column: col.Name}
+	if sameText(col.Name, "wavelength") && h.Col("wavelength_air") >= 0 {
+		k.medium, k.by = frame.Vacuum, "column wavelength beside wavelength_air"
 	}
-	r.keep(*s)
-	return nil
+	r.decide(s, r.headers(h), k, firstFinite(px.wave))
+	return r.finish(*s, px)
 }
 
 // rowThere is the error where the user's row is none of the table's.
@@ -278,7 +280,30 @@ func (r *reader) rows(h *fits.HDU) error {
 	if p.log10 {
 		r.exactLogLam(&s, c, px.wave)
 	}
-	return r.add(h, &s, px, p)
+	parts, err := r.tableRuns(h, p, px.wave)
+	if err != nil {
+		return err
+	}
+	if len(parts) > 1 {
+		r.s.Layout = layoutOrders
+	}
+	for k, part := range parts {
+		if r.o.Row > 0 && r.o.Row != k+1 && len(parts) > 1 {
+			continue
+		}
+		g := s
+		g.Notes = slices.Clone(s.Notes)
+		if len(parts) > 1 {
+			g.Order, g.Label = part.number(k)
+		}
+		if err := r.add(h, &g, px.slice(part), p); err != nil {
+			return err
+		}
+	}
+	if r.o.Row > len(parts) {
+		return h.Fail(fmt.Sprintf("there is no order %d in the list; it has %d", r.o.Row, len(parts)), "choose another row")
+	}
+	return nil
 }
 
 // exactLogLam replaces log10 wavelengths in single precision (0.08 km/s) by

@@ -82,7 +82,7 @@ func TestTextRefuses(t *testing.T) {
 		"bzip2":              {"BZh91AY", "bunzip2"},
 		"zip":                {"PK\x03\x04", "unzip"},
 		"UTF-16":             {"\xff\xfe5\x000\x00", "UTF-8"},
-		"VOTable":            {"<?xml version='1.0'?><VOTABLE/>", "not read yet"},
+		"VOTable":            {"<?xml version='1.0'?><VOTABLE/>", "without a table"},
 	} {
 		_, err := readText(tc.text, Options{})
 		if !oops.IsInput(err) || !strings.Contains(err.Error(), tc.want) {
