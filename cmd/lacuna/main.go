@@ -95,7 +95,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		},
 		Commands: []*cli.Command{
 			demoCommand(), newCommand(), runCommand(), measureCommand(), growthCommand(),
-			depleteCommand(), linesCommand(), inspectCommand(), completionCommand(), helpCommand(),
+			depleteCommand(), linesCommand(), inspectCommand(), velocityCommand(), completionCommand(), helpCommand(),
 		},
 		Action: func(c *cli.Context) error {
 			if !c.Args().Present() {

@@ -146,7 +146,7 @@ def main():
         print("// %s is %s, ecliptic of J2000." % (name, what))
         print("var %s = [...]term{" % name)
         for w, p, a, b in terms:
-            print("\t{%s, %d, %s, %s}," % (repr(float(w)), p, repr(float(a)), repr(float(b))))
+            print("\t{%s, %d, %s, %s}," % (repr(float(w)), p, repr(float(a) + 0.0), repr(float(b) + 0.0)))
         print("}" if k == len(series) - 1 else "}\n")
 
 
