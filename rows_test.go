@@ -15,7 +15,7 @@ var rows = map[string]int{
 	"survey":     7,
 	"config":     6,
 	"simulate":   5,
-	"measure":    4, "cog": 4, "abundance": 4,
+	"measure":    4, "cog": 4, "abundance": 4, "voigt/clouds": 4,
 	"spectrum/continuum": 3, "spectrum/telluric": 3,
 	"spectrum": 2,
 	"voigt":    1, "voigt/lsf": 1, "internal/table": 1,
