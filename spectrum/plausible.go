@@ -58,13 +58,10 @@ func (s *Segment) outOfLine() []int {
 			continue
 		}
 		var near []float64 // steps beyond those two
-		for _, k := range []int{i - 3, i - 2, i + 1, i + 2} {
-			if k >= 0 && k+1 < n {
+		for _, k := range []int{i - 3, i - 2, i + 1, i + 2, i + 3, i - 4} {
+			if k >= 0 && k+1 < n && len(near) < 4 {
 				near = append(near, w[k+1]-w[k])
 			}
-		}
-		if len(near) < 3 {
-			continue
 		}
 		slices.Sort(near)
 		usual := near[len(near)/2]
