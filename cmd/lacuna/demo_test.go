@@ -97,29 +97,30 @@ func TestDemo(t *testing.T) {
 	}
 }
 
-// A second demo takes the place of the first; a folder with anything else in it
-// is left alone, and so is one in which a run is at work.
-func TestDemoAgain(t *testing.T) {
-	dir := filepath.Join(t.TempDir(), "a folder", "lantern")
-	first := lacuna(t, "demo", "--out", dir, "--json")
-	if first.code != 0 || first.err != "" {
-		t.Fatalf("exit code %d\n%s", first.code, first.err)
+// A demo does not go where a run is at work, nor into a folder with other things.
+func TestDemoRefuses(t *testing.T) {
+	dir := t.TempDir()
+	write(t, dir, "truth.ecsv", read(t, filepath.Join(demo(t), "truth.ecsv")))
+	if err := os.Mkdir(filepath.Join(dir, "results"), 0o755); err != nil {
+		t.Fatal(err)
 	}
-	var records []survey.Record
-	if err := json.Unmarshal([]byte(first.out), &records); err != nil || len(records) != 3 {
-		t.Fatalf("%d records, %v", len(records), err)
-	}
-	stray := write(t, filepath.Join(dir, "results", "figures"), "old.svg", "")
 	j, err := survey.OpenJournal(filepath.Join(dir, "results"))
 	if err != nil {
 		t.Fatal(err)
 	}
+	stray := write(t, filepath.Join(dir, "results"), "old.svg", "")
 	mistake(t, 2, []string{"another run works here", "--out"}, "demo", "--out", dir)
 	if err := j.Close(); err != nil {
 		t.Fatal(err)
 	}
 	if _, err := os.Stat(stray); err != nil {
 		t.Error("a demo that was refused removed results")
+	}
+	if err := removeResults(filepath.Join(dir, "results")); err != nil {
+		t.Error(err)
+	}
+	if got := names(t, dir); len(got) != 1 {
+		t.Errorf("results of an earlier demo stay: %v", got)
 	}
 
 	other := t.TempDir()

@@ -57,7 +57,7 @@ func TestLines(t *testing.T) {
 		t.Errorf("sets of f: %v", sets)
 	}
 	for _, s := range sets {
-		works(t, "lines", "--f-set", s)
+		works(t, "lines", "--f-set", s, "--species", "Fe II")
 	}
 }
 

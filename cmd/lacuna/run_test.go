@@ -76,14 +76,14 @@ scale = "asplund2021"
 [[sightline]]
 name = "Lantern 1"
 velocity = [-40, 20]
-lines = ["K I 7698.96", "Na I 5889.95", "Na I 5895.92"]
+lines = ["Na I 5889.95", "Na I 5895.92"]
 [[sightline.spectrum]]
 file = "lantern1_red.fits"
 
 [[sightline]]
 name = "Lantern 2"
 velocity = [-15, 25]
-lines = ["Ti II 3383.76", "CH 4300.31"]
+lines = ["Ti II 3383.76"]
 [[sightline.spectrum]]
 file = "lantern2_blue.fits"
 [sightline.hydrogen]
@@ -95,7 +95,7 @@ source = "invented"
 [[sightline]]
 name = "Lantern 3"
 velocity = [-15, 45]
-lines = ["Zn II 2062.66", "Fe II 2374.46"]
+lines = ["Zn II 2062.66"]
 [[sightline.spectrum]]
 file = "lantern3_uv.fits"
 `
