@@ -16,6 +16,7 @@ var (
 		"WAVELENGTHVACUUM", "WAVEVACUUM", "ANGSTROM"}
 	fluxNames = []string{"FLUX", "FLUXNORM", "NORMFLUX", "NORMALISEDFLUX", "NORMALIZEDFLUX", "RELFLUX", "FLAM", "FLX", "F", "INTENSITY", "INT", "SPECTRUM", "DATA", "COUNTS"}
 	errNames  = []string{"ERR", "ERROR", "SIGMA", "SIG", "STDEV", "FLUXERR", "FLUXERROR", "ERRFLUX", "EFLUX", "FLUXSIGMA", "UNCERTAINTY", "RELERR", "STAT", "VAR", "VARIANCE", "FLUXVAR", "FLUXVARIANCE", "IVAR", "FLUXIVAR"}
+	lowNames  = []string{"ERRLOW", "ERRORLOW", "ERRLOWER", "ERRORLOWER", "STATERRLOW"}
 	maskNames = []string{"DQ", "QUAL", "QUALITY", "FLAG", "FLAGS", "MASK", "ANDMASK", "GOOD", "DQWGT"}
 	contNames = []string{"CONTINUUM", "CONT"}
 )
@@ -47,6 +48,7 @@ func columnName(s string) (name, unit string) {
 // picked are the columns of a table by index, −1 for none.
 type picked struct {
 	wave, flux, err, cont, mask int
+	low                         int    // lower errors, where err holds the upper ones
 	nameUnit                    string // unit that stood in the wavelength's name
 	errKind                     string // "", "variance", "inverse variance", "signal to noise"
 	goodIsZero                  bool   // polarity of the mask
@@ -56,7 +58,7 @@ type picked struct {
 // pick chooses columns by name, or by the user's word. where names the place in
 // errors.
 func pick(names []string, o Options, fail func(what, fix string) error) (picked, error) {
-	p := picked{wave: -1, flux: -1, err: -1, cont: -1, mask: -1, goodIsZero: true}
+	p := picked{wave: -1, flux: -1, err: -1, cont: -1, mask: -1, low: -1, goodIsZero: true}
 	var err error
 	choose := func(user, what string, among []string) int {
 		if err != nil || strings.EqualFold(user, "none") {
@@ -87,6 +89,9 @@ func pick(names []string, o Options, fail func(what, fix string) error) (picked,
 	p.err = choose(o.ErrCol, "error", errNames)
 	p.mask = choose(o.MaskCol, "mask", maskNames)
 	p.cont = choose(o.ContinuumCol, "continuum", contNames)
+	if p.err >= 0 && o.ErrCol == "" {
+		p.low = choose("", "lower error", lowNames)
+	}
 	if err != nil {
 		return p, err
 	}

@@ -34,6 +34,9 @@ func (s *Segment) fill(p pixels) error {
 		return err
 	}
 	s.Wave, s.Flux, s.Err, s.Continuum = p.wave, p.flux, p.err, p.cont
+	if s.Continuum != nil && !slices.ContainsFunc(s.Continuum, finite) {
+		s.Continuum = nil
+	}
 	s.maskErrors(p.gaps)
 	s.lowerErrors(p.errLow)
 	s.maskFiller()
@@ -192,7 +195,7 @@ func (s *Segment) maskErrors(gaps bool) {
 // the upper one stands in. Counts of zero have no room below them: the lower error
 // of Poisson statistics is 0 there, which would be an infinite weight.
 func (s *Segment) lowerErrors(v []float64) {
-	if v == nil || s.Err == nil {
+	if v == nil || s.Err == nil || !slices.ContainsFunc(v, finite) {
 		return
 	}
 	stand := 0

@@ -191,7 +191,7 @@ func (r *reader) textSegment(sh *sheet, p picked, names []string, a, b int, labe
 	for _, col := range []struct {
 		index int
 		into  *[]float64
-	}{{p.wave, &px.wave}, {p.flux, &px.flux}, {p.err, &px.err}, {p.cont, &px.cont}, {p.mask, &mask}} {
+	}{{p.wave, &px.wave}, {p.flux, &px.flux}, {p.err, &px.err}, {p.low, &px.errLow}, {p.cont, &px.cont}, {p.mask, &mask}} {
 		v, err := column(col.index)
 		if err != nil {
 			return err

@@ -145,7 +145,7 @@ func (r *reader) cells(h *fits.HDU, p picked) error {
 		for _, col := range []struct {
 			index int
 			into  *[]float64
-		}{{p.wave, &px.wave}, {p.flux, &px.flux}, {p.err, &px.err}, {p.cont, &px.cont}} {
+		}{{p.wave, &px.wave}, {p.flux, &px.flux}, {p.err, &px.err}, {p.low, &px.errLow}, {p.cont, &px.cont}} {
 			if col.index < 0 {
 				continue
 			}
@@ -197,16 +197,7 @@ func (r *reader) trim(h *fits.HDU, row int64, px *pixels) error {
 		return h.Fail(fmt.Sprintf("row %d: NELEM = %v, but cells have %d values", row+1, v, len(px.wave)), "the table is damaged")
 	}
 	n := int(v[0])
-	px.wave, px.flux = px.wave[:n], px.flux[:n]
-	if px.err != nil {
-		px.err = px.err[:n]
-	}
-	if px.cont != nil {
-		px.cont = px.cont[:n]
-	}
-	if px.bad != nil {
-		px.bad = px.bad[:n]
-	}
+	*px = px.slice(run{to: n})
 	return nil
 }
 
@@ -256,7 +247,7 @@ func (r *reader) rows(h *fits.HDU) error {
 	for _, col := range []struct {
 		index int
 		into  *[]float64
-	}{{p.wave, &px.wave}, {p.flux, &px.flux}, {p.err, &px.err}, {p.cont, &px.cont}} {
+	}{{p.wave, &px.wave}, {p.flux, &px.flux}, {p.err, &px.err}, {p.low, &px.errLow}, {p.cont, &px.cont}} {
 		if col.index >= 0 {
 			if *col.into, err = h.Column(col.index); err != nil {
 				return err

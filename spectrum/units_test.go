@@ -36,3 +36,20 @@ func TestColumnName(t *testing.T) {
 		}
 	}
 }
+
+// The spellings of formats/README §5, as FITS Standard 4.0, 4.3 writes them.
+func TestStandardUnit(t *testing.T) {
+	const flam = "erg s-1 cm-2 Angstrom-1"
+	for text, want := range map[string]string{
+		"erg/s/cm**2/Angstrom": flam, "erg cm-2 s-1 Angstrom-1": "erg cm-2 s-1 Angstrom-1", "erg.cm**(-2).s**(-1).angstrom**(-1)": "erg cm-2 s-1 Angstrom-1",
+		"erg /s /cm**2 /angstrom": flam, "ERG/CM2/S/A": "erg cm-2 s-1 Angstrom-1", "1E-17 erg/cm^2/s/Ang": "10**-17 erg cm-2 s-1 Angstrom-1",
+		"10**(-16)erg/cm2/s/A": "10**-16 erg cm-2 s-1 Angstrom-1", "10**(-16)erg.cm**(-2).s**(-1).angstrom**(-1)": "10**-16 erg cm-2 s-1 Angstrom-1",
+		"W/m2/um": "W m-2 um-1", "mW/m2/nm": "mW m-2 nm-1", "Jy": "Jy", "adu": "adu", "ADU": "adu", "DN": "adu", "Counts/s": "count s-1", "electron": "electron", "": "", "1": "",
+		// What is not known stays.
+		"FN": "FN", "e-": "e-", "M": "M", "furlong/s": "furlong/s", "cm**": "cm**", "cm**(2": "cm**(2", "3 erg": "3 erg", "erg s-99": "erg s-99", "10**x erg": "10**x erg",
+	} {
+		if got := standardUnit(text); got != want {
+			t.Errorf("%q: %q, want %q", text, got, want)
+		}
+	}
+}

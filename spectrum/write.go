@@ -75,7 +75,7 @@ func WriteImage(path string, s *Spectrum, cards ...Card) error {
 			Card{Key: "COMMENT", Comment: "row 1 = flux, row 2 = 1-sigma error"})
 	}
 	if g.Unit != "" {
-		head = append(head, Card{Key: "BUNIT", Value: g.Unit})
+		head = append(head, Card{Key: "BUNIT", Value: standardUnit(g.Unit)})
 	}
 	head = append(append(head, s.cards()...), cards...)
 	return disk.AtomicWrite(path, func(w io.Writer) error { return fits.WriteImage(w, lines, head) })
@@ -143,20 +143,20 @@ func (s *Spectrum) cards() []Card {
 // are filled up with NaN; NELEM counts what is real.
 func (s *Spectrum) writeTable(w io.Writer, extra []Card) error {
 	longest := 0
-	errors, continuum := true, true
 	for i := range s.Segments {
-		g := &s.Segments[i]
-		longest = max(longest, len(g.Wave))
-		errors, continuum = errors && g.Err != nil, continuum && g.Continuum != nil
+		longest = max(longest, len(s.Segments[i].Wave))
 	}
+	errors, lower, continuum := s.has()
 	var order, nelem, label = fits.Vector{Name: "ORDER", Type: 'J'}, fits.Vector{Name: "NELEM", Type: 'J'}, fits.Vector{Name: "LABEL", Type: 'A'}
 	first := &s.Segments[0]
+	unit := standardUnit(first.Unit)
 	ucd := map[frame.Medium]string{frame.Air: "em.wl;obs.atmos", frame.Vacuum: "em.wl", frame.UnknownMedium: ""}[first.Medium]
 	wave := fits.Vector{Name: "WAVE", Unit: "Angstrom", UCD: ucd, Utype: "Spectrum.Data.SpectralAxis.Value", Type: 'D'}
-	flux := fits.Vector{Name: "FLUX", Unit: first.Unit, UCD: "phot.flux.density;em.wl;meta.main", Utype: "Spectrum.Data.FluxAxis.Value", Type: 'D'}
-	sigma := fits.Vector{Name: "ERR", Unit: first.Unit, UCD: "stat.error;phot.flux.density;em.wl;meta.main", Utype: "Spectrum.Data.FluxAxis.Accuracy.StatError", Type: 'D'}
+	flux := fits.Vector{Name: "FLUX", Unit: unit, UCD: "phot.flux.density;em.wl;meta.main", Utype: "Spectrum.Data.FluxAxis.Value", Type: 'D'}
+	sigma := fits.Vector{Name: "ERR", Unit: unit, UCD: "stat.error;phot.flux.density;em.wl;meta.main", Utype: "Spectrum.Data.FluxAxis.Accuracy.StatError", Type: 'D'}
+	low := fits.Vector{Name: "ERR_LOW", Unit: unit, UCD: "stat.error;phot.flux.density;em.wl;stat.min", Utype: "Spectrum.Data.FluxAxis.Accuracy.StatErrLow", Type: 'D'}
 	qual := fits.Vector{Name: "QUAL", UCD: "meta.code.qual;meta.main", Utype: "Spectrum.Data.FluxAxis.Accuracy.QualityStatus", Type: 'J'}
-	cont := fits.Vector{Name: "CONTINUUM", Unit: first.Unit, Type: 'D'}
+	cont := fits.Vector{Name: "CONTINUUM", Unit: unit, UCD: "phot.flux.density;em.wl;spect.continuum", Utype: "Spectrum.Data.BackgroundModel.Continuum", Type: 'D'}
 	fill := func(v []float64) []float64 {
 		out := make([]float64, longest)
 		for i := copy(out, v); i < longest; i++ {
@@ -180,6 +180,9 @@ func (s *Spectrum) writeTable(w io.Writer, extra []Card) error {
 		if errors {
 			sigma.Rows = append(sigma.Rows, fill(g.Err))
 		}
+		if lower {
+			low.Rows = append(low.Rows, fill(g.ErrLow))
+		}
 		if continuum {
 			cont.Rows = append(cont.Rows, fill(g.Continuum))
 		}
@@ -187,6 +190,9 @@ func (s *Spectrum) writeTable(w io.Writer, extra []Card) error {
 	cols := []fits.Vector{order, label, nelem, wave, flux}
 	if errors {
 		cols = append(cols, sigma)
+	}
+	if lower {
+		cols = append(cols, low)
 	}
 	cols = append(cols, qual)
 	if continuum {
@@ -196,25 +202,42 @@ func (s *Spectrum) writeTable(w io.Writer, extra []Card) error {
 	return fits.WriteTable(w, head, "SPECTRUM", cols, []Card{{Key: "VOCLASS", Value: "SPECTRUM V2.0"}})
 }
 
+// has reports which columns any segment has; those without are filled with NaN.
+func (s *Spectrum) has() (errors, lower, continuum bool) {
+	for i := range s.Segments {
+		g := &s.Segments[i]
+		errors, lower, continuum = errors || g.Err != nil, lower || g.ErrLow != nil, continuum || g.Continuum != nil
+	}
+	return errors, lower, continuum
+}
+
+// value is NaN where there is no column.
+func value(v []float64, i int) float64 {
+	if v == nil {
+		return math.NaN()
+	}
+	return v[i]
+}
+
 // writeText writes one row a pixel, with a column order where there are several
 // segments.
 func (s *Spectrum) writeText(w io.Writer, extra []Card, ecsv bool) error {
-	first := &s.Segments[0]
-	errors, continuum := true, true
-	for i := range s.Segments {
-		errors, continuum = errors && s.Segments[i].Err != nil, continuum && s.Segments[i].Continuum != nil
-	}
+	unit := standardUnit(s.Segments[0].Unit)
+	errors, lower, continuum := s.has()
 	t := table.New()
 	if len(s.Segments) > 1 {
 		t.Cols = append(t.Cols, table.Column{Name: "order", Type: table.Integer})
 	}
-	t.Cols = append(t.Cols, table.Column{Name: "wave", Unit: "Angstrom", Type: table.Real}, table.Column{Name: "flux", Unit: first.Unit, Type: table.Real})
+	t.Cols = append(t.Cols, table.Column{Name: "wave", Unit: "Angstrom", Type: table.Real}, table.Column{Name: "flux", Unit: unit, Type: table.Real})
 	if errors {
-		t.Cols = append(t.Cols, table.Column{Name: "err", Unit: first.Unit, Type: table.Real})
+		t.Cols = append(t.Cols, table.Column{Name: "err", Unit: unit, Type: table.Real})
+	}
+	if lower {
+		t.Cols = append(t.Cols, table.Column{Name: "err_low", Unit: unit, Type: table.Real, Description: "err is then the upper one"})
 	}
 	t.Cols = append(t.Cols, table.Column{Name: "mask", Type: table.Integer, Description: "0 is good"})
 	if continuum {
-		t.Cols = append(t.Cols, table.Column{Name: "continuum", Unit: first.Unit, Type: table.Real})
+		t.Cols = append(t.Cols, table.Column{Name: "continuum", Unit: unit, Type: table.Real})
 	}
 	for k := range s.Segments {
 		g := &s.Segments[k]
@@ -225,7 +248,10 @@ func (s *Spectrum) writeText(w io.Writer, extra []Card, ecsv bool) error {
 			}
 			row = append(row, table.Exact(g.Wave[i]), table.Exact(g.Flux[i]))
 			if errors {
-				row = append(row, table.Exact(g.Err[i]))
+				row = append(row, table.Exact(value(g.Err, i)))
+			}
+			if lower {
+				row = append(row, table.Exact(value(g.ErrLow, i)))
 			}
 			bad := 0
 			if g.Mask[i].Bad() {
@@ -233,7 +259,7 @@ func (s *Spectrum) writeText(w io.Writer, extra []Card, ecsv bool) error {
 			}
 			row = append(row, table.Int(bad))
 			if continuum {
-				row = append(row, table.Exact(g.Continuum[i]))
+				row = append(row, table.Exact(value(g.Continuum, i)))
 			}
 			t.AddRow(row...)
 		}
@@ -291,7 +317,7 @@ func (s *Spectrum) meta(extra []Card) []table.KV {
 	if g.Normalised {
 		add("normalised", "true")
 	}
-	add("flux_unit", g.Unit)
+	add("flux_unit", standardUnit(g.Unit))
 	for _, c := range extra {
 		if c.Value != nil {
 			add(strings.ToLower(c.Key), fmt.Sprint(c.Value))

@@ -19,7 +19,7 @@ import (
 func lantern1(medium frame.Medium, kind frame.Kind) *spectrum.Spectrum {
 	s := &spectrum.Spectrum{Object: "Lantern 1", Coord: &spectrum.Coord{RA: 312.2345, Dec: -44.1234}}
 	for k, n := range []int{40, 31} {
-		g := spectrum.Segment{Order: 87 + k, Label: []string{"order 87", "order 88"}[k], Medium: medium, Frame: kind, Unit: "erg/s/cm**2/Angstrom", Resolution: 81234.5, Normalised: true,
+		g := spectrum.Segment{Order: 87 + k, Label: []string{"order 87", "order 88"}[k], Medium: medium, Frame: kind, Unit: "erg s-1 cm-2 Angstrom-1", Resolution: 81234.5, Normalised: true,
 			Shift: []frame.Applied{{Keyword: "test", To: frame.Heliocent, V: -17.25, Done: kind == frame.Heliocent}}}
 		for i := range n {
 			g.Wave = append(g.Wave, 3933.123456789+50*float64(k)+0.012*float64(i))
@@ -157,6 +157,77 @@ func verify(t *testing.T, path string) {
 	}
 }
 
+// What only some segments have comes back with those: errors, lower errors, a
+// continuum. The table passes fitsverify.
+func TestWriteUnlikeSegments(t *testing.T) {
+	dir := t.TempDir()
+	want := lantern1(frame.Vacuum, frame.Heliocent)
+	a, b := &want.Segments[0], &want.Segments[1]
+	for _, e := range a.Err {
+		a.ErrLow = append(a.ErrLow, e/2)
+	}
+	b.Err, b.Continuum = nil, nil
+	for _, name := range []string{"a.fits", "a.ecsv", "a.csv"} {
+		path := filepath.Join(dir, name)
+		if err := spectrum.Write(path, want); err != nil {
+			t.Fatal(err)
+		}
+		got, err := spectrum.Read(path, spectrum.Options{})
+		if err != nil {
+			t.Fatal(err)
+		}
+		for k := range want.Segments {
+			g, w := &got.Segments[k], &want.Segments[k]
+			compare(t, name, g, w)
+			if !slices.Equal(g.ErrLow, w.ErrLow) || (g.Err == nil) != (w.Err == nil) || (g.Continuum == nil) != (w.Continuum == nil) {
+				t.Errorf("%s: segment %d: lower errors %v, errors %v, continuum %v", name, k, g.ErrLow, g.Err != nil, g.Continuum != nil)
+			}
+		}
+	}
+	verify(t, filepath.Join(dir, "a.fits"))
+}
+
+// Spectra of every kind that were read here can be written as a table that passes
+// fitsverify, and come back with the same wavelengths and flux.
+func TestConvertSamples(t *testing.T) {
+	dir := t.TempDir()
+	names, _ := filepath.Glob(filepath.Join(check.Shared(t, "formats/samples"), "[0-9]*"))
+	names = append(names, check.Shared(t, "realdata/iq-aur/TRES.fits"), check.Shared(t, "realdata/hr1840/ocb6i2020_x1d.fits"))
+	if len(names) != 22 {
+		t.Fatalf("%d files", len(names))
+	}
+	for _, name := range names {
+		want, err := spectrum.Read(name, spectrum.Options{})
+		if err != nil {
+			t.Fatal(err)
+		}
+		path := filepath.Join(dir, filepath.Base(name)+".fits")
+		if err := spectrum.Write(path, want); err != nil {
+			t.Errorf("%s: %v", filepath.Base(name), err)
+			continue
+		}
+		verify(t, path)
+		got, err := spectrum.Read(path, spectrum.Options{})
+		if err != nil {
+			t.Errorf("%s: %v", filepath.Base(name), err)
+			continue
+		}
+		if len(got.Segments) != len(want.Segments) || got.Object != want.Object {
+			t.Errorf("%s: %d segments of %q, want %d of %q", filepath.Base(name), len(got.Segments), got.Object, len(want.Segments), want.Object)
+			continue
+		}
+		for k := range want.Segments {
+			g, w := &got.Segments[k], &want.Segments[k]
+			same := func(a, b []float64) bool {
+				return slices.EqualFunc(a, b, func(x, y float64) bool { return x == y || math.IsNaN(x) && math.IsNaN(y) })
+			}
+			if !same(g.Wave, w.Wave) || !same(g.Flux, w.Flux) || !same(g.ErrLow, w.ErrLow) || g.Good() != w.Good() || g.Medium != w.Medium || g.Frame != w.Frame || g.Order != w.Order {
+				t.Errorf("%s: segment %d of %s, %s, %d good pixels; want %s, %s, %d", filepath.Base(name), k, g.Medium, g.Frame, g.Good(), w.Medium, w.Frame, w.Good())
+			}
+		}
+	}
+}
+
 // A reader that knows nothing of ours. 1 − 0.9 is 0.09999999999999998 in doubles.
 func TestAstropyReadsOurTable(t *testing.T) {
 	python := "/usr/bin/python3"
@@ -168,8 +239,12 @@ func TestAstropyReadsOurTable(t *testing.T) {
 	if err := spectrum.Write(path, s); err != nil {
 		t.Fatal(err)
 	}
-	script := `import sys
+	script := `import sys, warnings
+warnings.simplefilter('error')
 from astropy.io import fits
+from astropy.table import QTable
+q = QTable.read(sys.argv[1], hdu=1)
+print(len(q), q['WAVE'].unit, q['FLUX'].unit, q['ERR'][1][30])
 h = fits.open(sys.argv[1])
 t = h[1].data
 n = t['NELEM'][0]
@@ -178,7 +253,7 @@ print(repr(float(t['WAVE'][0][39])), repr(float(t['FLUX'][1][15])), int(t['QUAL'
 	if err != nil {
 		t.Fatalf("%v\n%s", err, out)
 	}
-	want := []string{"3933.591456789", "0.09999999999999998", "1", "40", "order 88", "-17.25", "TOPOCENT", "em.wl;obs.atmos"}
+	want := []string{"3933.591456789", "0.09999999999999998", "1", "40", "order 88", "-17.25", "TOPOCENT", "em.wl;obs.atmos", "2 Angstrom erg / (Angstrom cm2 s) 0.012 erg"}
 	for _, w := range want {
 		if !strings.Contains(string(out), w) {
 			t.Errorf("astropy reads %s; want %q in it", out, w)

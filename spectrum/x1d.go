@@ -96,9 +96,7 @@ func (r *reader) x1dRow(h *fits.HDU, p picked, row, serious int64) (px pixels, e
 		return v
 	}
 	px.wave, px.flux, px.err = read(p.wave), read(p.flux), read(p.err)
-	if p.err >= 0 && p.err == h.Col("ERROR") {
-		px.errLow = read(h.Col("ERROR_LOWER"))
-	}
+	px.errLow = read(p.low)
 	dq, weight, elems := read(h.Col("DQ")), read(h.Col("DQ_WGT")), read(h.Col("NELEM"))
 	var user []float64
 	if p.mask >= 0 {
