@@ -23,4 +23,8 @@ type Options struct {
 	Resolution float64 // λ/FWHM; 0 by the header
 	Normalised bool    // the continuum of the spectrum is 1
 	Coord      *Coord  // direction of the star
+
+	// NoSum leaves Source.SHA256 empty: the checksum is the one thing that needs
+	// every byte of a file, of which otherwise only what is asked for is read.
+	NoSum bool
 }

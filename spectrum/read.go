@@ -74,9 +74,15 @@ func read(c *fits.Content, o Options) (*Spectrum, error) {
 	if !slices.ContainsFunc(r.s.Segments, func(s Segment) bool { return s.Good() > 0 }) {
 		return nil, oops.Input(c.Name, "", "no pixel is usable by its flux, error and quality", "look at the quality flags, or choose other columns")
 	}
-	sum, err := c.SHA256()
-	if err != nil {
-		return nil, err
+	sum := ""
+	if !o.NoSum {
+		if err := r.checkSums(); err != nil {
+			return nil, err
+		}
+		var err error
+		if sum, err = c.SHA256(); err != nil {
+			return nil, err
+		}
 	}
 	for i := range r.s.Segments {
 		s := &r.s.Segments[i]
@@ -86,6 +92,27 @@ func read(c *fits.Content, o Options) (*Spectrum, error) {
 		}
 	}
 	return r.s, nil
+}
+
+// maxCheckSums is the largest file whose FITS checksums are looked at, in bytes.
+const maxCheckSums = 64 << 20
+
+// checkSums says where a FITS file is not as its writer left it. Editors that
+// change a card leave the sum as it was, so this is no error.
+func (r *reader) checkSums() error {
+	if r.file == nil || r.c.Size > maxCheckSums {
+		return nil
+	}
+	for _, h := range r.file.HDUs {
+		what, err := h.CheckSums()
+		if err != nil {
+			return err
+		}
+		if what != "" {
+			r.s.Notes = append(r.s.Notes, h.Where()+": "+what+": the file was changed or damaged after it was written")
+		}
+	}
+	return nil
 }
 
 // recognise looks at the first bytes.

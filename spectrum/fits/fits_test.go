@@ -450,3 +450,40 @@ func TestGzipSpools(t *testing.T) {
 		t.Errorf("%d files in the temporary folder, want the packed one alone", len(left))
 	}
 }
+
+// Files of the ESO archive and two samples carry sums that their writers made; any
+// flipped bit breaks them.
+func TestCheckSums(t *testing.T) {
+	seen := 0
+	for _, name := range []string{"formats/samples/01_linear_wave_nm.fits", "formats/samples/08_sdp_row_vector.fits", "realdata/cen-x3/ADP.2021-08-26T17_24_42.195.fits",
+		"realdata/qv-nor/ADP.2020-06-19T08_40_21.544.fits"} {
+		b, err := os.ReadFile(check.Shared(t, name))
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, h := range open(t, b).HDUs {
+			if what, err := h.CheckSums(); err != nil || what != "" {
+				t.Errorf("%s, %s: %s, %v", name, h.Where(), what, err)
+			}
+			if h.Has("CHECKSUM") {
+				seen++
+			}
+		}
+		for _, at := range []int{len(b) / 2, len(b) - 3000} {
+			b[at] ^= 4
+			broken := 0
+			for _, h := range open(t, b).HDUs {
+				if what, err := h.CheckSums(); err != nil || what != "" {
+					broken++
+				}
+			}
+			if broken != 1 {
+				t.Errorf("%s: byte %d changed, and %d HDUs say so", name, at, broken)
+			}
+			b[at] ^= 4
+		}
+	}
+	if seen < 6 {
+		t.Errorf("only %d sums were looked at", seen)
+	}
+}

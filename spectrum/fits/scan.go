@@ -56,6 +56,7 @@ type HDU struct {
 	tiled *tiled
 
 	r          io.ReaderAt
+	start      int64 // of the header
 	data, size int64 // of the data unit, without padding
 	heap       int64 // start of the heap, from the start of the data
 }
@@ -91,7 +92,7 @@ func New(c *Content) (*File, error) {
 		if len(f.HDUs) == maxHDUs {
 			return nil, oops.Inputf(c.Name, "", "take the file apart", "more than %d HDUs", maxHDUs)
 		}
-		h := &HDU{Index: len(f.HDUs), r: c}
+		h := &HDU{Index: len(f.HDUs), r: c, start: off}
 		h.file, h.where = c.Name, fmt.Sprintf("HDU %d", h.Index)
 		next, err := h.scan(c, off)
 		if err != nil {

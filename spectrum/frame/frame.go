@@ -40,9 +40,9 @@ const (
 
 // Applied is one velocity correction found with a spectrum.
 type Applied struct {
-	Keyword string  // where it was found ("ESO QC VRAD HELICOR", "user")
-	To      Kind    // the frame it leads to
-	V       float64 // km/s, to add: λ_new = λ (1+V/c)
-	Done    bool    // already in the wavelengths
-	By      string  // who says so
+	Keyword string  `json:"keyword"` // where it was found ("ESO QC VRAD HELICOR", "user")
+	To      Kind    `json:"to"`      // the frame it leads to
+	V       float64 `json:"v"`       // km/s, to add: λ_new = λ (1+V/c)
+	Done    bool    `json:"done"`    // already in the wavelengths
+	By      string  `json:"by"`      // who says so
 }
