@@ -24,7 +24,7 @@ type Problem interface {
 // Options steer the iteration; the zero value is good for residuals in units of
 // their errors.
 type Options struct {
-	Tol           float64 // converged when an iteration changes χ² by less, actual and predicted; 0: 1e-6
+	Tol           float64 // converged when an iteration changes, or is sure to change, χ² by less; 0: 1e-6
 	MaxIterations int     // 0: 200
 	Lambda        float64 // damping at the start, relative to the columns of the Jacobian; 0: 1e-3
 	Slow          float64 // stop as Creeping when 20 iterations together lower χ² by less; 0: never
@@ -151,6 +151,9 @@ func (ws *Workspace) iterate(p Problem, lo, hi []float64, o Options, s *Solution
 	lambda, nu := o.Lambda, 2.0
 	again := math.Inf(1)         // χ² when the damping was last set back,
 	back, promised := false, 0.0 // and what the step after that was predicted to gain
+	// The last step kept what was predicted, within 30 %: near the minimum, where the
+	// next prediction can be believed as well and need not be tried.
+	trusted := false
 	const lap = 20
 	before := ws.now.chi2 // χ² at the last lap
 	for s.Iterations < o.MaxIterations {
@@ -182,6 +185,9 @@ func (ws *Workspace) iterate(p Problem, lo, hi []float64, o Options, s *Solution
 			if back {
 				back, promised = false, predicted
 			}
+			if trusted && len(ws.free) == len(now.x) && predicted <= max(o.Tol, rounding*now.chi2) && lambda <= o.Lambda {
+				return Converged
+			}
 			p.Eval(next.x, next.r, next.jac)
 			s.Evaluations++
 			next.chi2 = floats.Dot(next.r, next.r)
@@ -191,6 +197,7 @@ func (ws *Workspace) iterate(p Problem, lo, hi []float64, o Options, s *Solution
 			actual, tol := now.chi2-next.chi2, max(o.Tol, rounding*now.chi2)
 			done := math.Abs(actual) <= tol && math.Abs(predicted) <= tol
 			accept := predicted > 0 && actual > 1e-4*predicted
+			trusted = accept && math.Abs(actual-predicted) <= 0.3*predicted
 			if accept {
 				*now, *next = *next, *now
 				f := 2*actual/predicted - 1

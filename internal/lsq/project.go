@@ -108,3 +108,12 @@ func (p *Projector) lengths(ok bool) {
 		panic("lsq: Projector: lengths do not fit the factorized matrix")
 	}
 }
+
+// LogDet returns ln |det R| = ½ ln det AᵀA.
+func (p *Projector) LogDet() float64 {
+	s := 0.0
+	for j := range p.k {
+		s += math.Log(p.r[j*p.k+j])
+	}
+	return s
+}

@@ -95,15 +95,17 @@ func (ws *Workspace) factor() {
 	k := len(ws.free)
 	a := general(ws.qr, ws.m, k)
 	jac := ws.now.jac.RawMatrix()
+	norm := ws.p[:k]
+	clear(norm)
 	for i := range ws.m {
 		row, src := a.Data[i*k:(i+1)*k], jac.Data[i*jac.Stride:]
 		for l, j := range ws.free {
 			row[l] = src[j]
+			norm[l] += src[j] * src[j]
 		}
 	}
 	for l, j := range ws.free {
-		norm := blas64.Nrm2(blas64.Vector{N: ws.m, Inc: k, Data: a.Data[l:]})
-		ws.scale[j] = max(ws.scale[j], norm)
+		ws.scale[j] = max(ws.scale[j], math.Sqrt(norm[l]))
 	}
 	lapack64.Geqrf(a, ws.tau[:k], ws.work, len(ws.work))
 	copy(ws.qtr, ws.now.r)

@@ -30,7 +30,7 @@ func (f *Fitter) Curves(k int, x []float64) (Curves, error) {
 		return c, w.bad("mask less, or lower the degree of the continuum", "the continuum cannot be found")
 	}
 	// All pixels, masked ones too: the same sub-grid step and width with other rows.
-	full := &window{in: &open, name: w.name, width: -1, zeroCol: w.zeroCol, deg: w.deg, k: w.k, unit: w.unit, cut: w.cut, knownZ: w.knownZ, lin: w.lin}
+	full := &window{in: &open, name: w.name, width: -1, zeroCol: w.zeroCol, deg: w.deg, k: w.k, unit: w.unit, cut: w.cut, cache: new(gridCache), knownZ: w.knownZ, lin: w.lin}
 	full.pix = make([]int, len(in.Wave))
 	for i := range full.pix {
 		full.pix[i] = i

@@ -42,6 +42,8 @@ type Options struct {
 	Steps float64
 	// Tau is the optical depth below which the wing of a line is cut off; 0: 1e-7.
 	Tau float64
+
+	cache *gridCache // shared by the fitters of one search; nil: an own one
 }
 
 // New checks a problem and prepares its fit.
@@ -57,6 +59,9 @@ func New(p Problem, o Options) (*Fitter, error) {
 	if o.Tau == 0 {
 		o.Tau = tauTol
 	}
+	if o.cache == nil {
+		o.cache = new(gridCache)
+	}
 	if len(p.Windows) == 0 {
 		return nil, bad("", "give at least one", "no window to fit")
 	}
@@ -71,7 +76,7 @@ func New(p Problem, o Options) (*Fitter, error) {
 		if err != nil {
 			return nil, err
 		}
-		w.cut = o.Tau
+		w.cut, w.cache = o.Tau, o.cache
 		f.wins = append(f.wins, w)
 	}
 	if err := f.params.enter(p); err != nil {

@@ -30,6 +30,42 @@ type grid struct {
 	fwhm      float64 // km/s, in the middle of the window
 }
 
+// A gridCache keeps the grids that were made, for fits of the same windows again: with
+// other numbers of clouds, from other starts. It belongs to one goroutine.
+type gridCache struct {
+	keys  []gridKey
+	grids []*grid
+}
+
+type gridKey struct {
+	window   *float64 // its first wavelength
+	b, q, w0 float64
+	h        float64
+}
+
+// get returns a grid for at least this b, made if need be: b is rounded down to steps
+// of 19 %, w0 to steps of 0.05, so that a fit that moves a little finds it again.
+func (c *gridCache) get(edges []float64, in *Window, pix []int, b, q, w0, h float64) (*grid, error) {
+	b = math.Exp2(math.Floor(4*math.Log2(b)) / 4)
+	w0 = 0.05 * math.Round(w0/0.05)
+	key := gridKey{&in.Wave[0], b, q, w0, h}
+	for i, k := range c.keys {
+		if k == key {
+			return c.grids[i], nil
+		}
+	}
+	g := new(grid)
+	if err := g.make(edges, in.Profile, pix, b, q, w0, h); err != nil {
+		return nil, err
+	}
+	const most = 64
+	if len(c.keys) == most {
+		c.keys, c.grids = c.keys[1:], c.grids[1:]
+	}
+	c.keys, c.grids = append(c.keys, key), append(c.grids, g)
+	return g, nil
+}
+
 // trimTol is the weight, relative to the largest of the row, that the Jacobian
 // leaves out: derivatives need no more than five digits.
 const trimTol = 1e-6
@@ -54,7 +90,13 @@ func (g *grid) make(edges []float64, p lsf.Profile, pix []int, b, q, w0, h float
 	} else if err := g.parabola(r, edges, base, pix, h); err != nil {
 		return err
 	}
-	g.trim = make([][2]int, len(pix))
+	g.trimAll()
+	return nil
+}
+
+// trimAll finds which weights count for a derivative.
+func (g *grid) trimAll() {
+	g.trim = make([][2]int, len(g.weight))
 	for i, w := range g.weight {
 		least := trimTol * floats.Max(w)
 		a, z := 0, len(w)
@@ -66,7 +108,6 @@ func (g *grid) make(edges []float64, p lsf.Profile, pix []int, b, q, w0, h float
 		}
 		g.trim[i] = [2]int{a, z}
 	}
-	return nil
 }
 
 // pick takes the rows of the good pixels.

@@ -124,8 +124,8 @@ func TestJacobian(t *testing.T) {
 			largest = max(largest, math.Abs(d))
 			worst = max(worst, math.Abs(d-design[i][j]))
 		}
-		// slopeTol and trimTol leave out 1e-6 of a column; tauTol changes with x
-		if !(worst <= 2e-5*largest) || largest == 0 {
+		// slopeTol leaves out elements of 1e-5, trimTol as much; tauTol changes with x
+		if !(worst <= 1e-4*largest) || largest == 0 {
 			t.Errorf("%s: off by %.1e of %.3g", name, worst/largest, largest)
 		}
 		t.Logf("%s: %.1e", name, worst/largest)

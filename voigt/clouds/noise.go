@@ -67,19 +67,3 @@ func (n noise) whiten(x []float64, cols int) {
 		floats.Scale(1/l[n.band], row)
 	}
 }
-
-// colour replaces independent numbers of unit variance by correlated ones, L x.
-func (n noise) colour(x []float64) {
-	if n.band == 0 {
-		return
-	}
-	width := n.band + 1
-	for i := len(x) - 1; i >= 0; i-- {
-		l := n.chol[i*width : (i+1)*width]
-		s := 0.0
-		for j := max(0, i-n.band); j <= i; j++ {
-			s += l[n.band+j-i] * x[j]
-		}
-		x[i] = s
-	}
-}

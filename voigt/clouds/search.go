@@ -96,6 +96,9 @@ func (s *Search) Run() (Found, error) {
 	if s.Criterion != "" && s.Criterion != "BIC" && s.Criterion != "AICc" {
 		return Found{}, bad("", `use "BIC" or "AICc"`, "criterion %q", s.Criterion)
 	}
+	with := *s
+	with.Options.cache = new(gridCache)
+	s = &with
 	h := &hunt{Search: s}
 	now, err := h.try(s.Begin, s.Shared)
 	if err != nil {

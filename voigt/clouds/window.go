@@ -26,7 +26,8 @@ type window struct {
 	basis []float64 // Legendre polynomials over σ, len(pix) × deg+1
 	data  []float64 // y, whitened
 
-	grid   grid
+	grid   *grid
+	cache  *gridCache
 	q      float64   // steps of its sub-grid
 	factor []float64 // on the sub-grid; nil: 1
 	absorb []absorber
@@ -243,19 +244,16 @@ func (w *window) regrid(b, q, w0, h float64) error {
 		edges = lsf.Edges(w.in.Wave)
 	}
 	w.q = q
-	if err := w.grid.make(edges, w.in.Profile, w.pix, b, q, w0, h); err != nil {
+	g, err := w.cache.get(edges, w.in, w.pix, b, q, w0, h)
+	if err != nil {
 		if m, ok := err.(*oops.Mistake); ok {
 			m.Where = w.name + ": " + m.Where
 		}
 		return err
 	}
+	w.grid = g
+	w.room()
 	n := len(w.grid.sub)
-	for _, s := range []*[]float64{&w.tau, &w.trans, &w.u, &w.h, &w.hu, &w.ha} {
-		*s = sized(*s, n)
-	}
-	for i := range w.slope {
-		w.slope[i] = stretch{y: sized(w.slope[i].y, n)}
-	}
 	w.factor = nil
 	if f := w.in.Factor; f != nil {
 		if len(f.Wave) != len(f.Value) || len(f.Wave) < 2 {
@@ -281,6 +279,17 @@ func (w *window) regrid(b, q, w0, h float64) error {
 		a.parts = a.line.Within(0.1 * b)
 	}
 	return nil
+}
+
+// room makes the arrays on the sub-grid as long as it.
+func (w *window) room() {
+	n := len(w.grid.sub)
+	for _, s := range []*[]float64{&w.tau, &w.trans, &w.u, &w.h, &w.hu, &w.ha} {
+		*s = sized(*s, n)
+	}
+	for i := range w.slope {
+		w.slope[i] = stretch{y: sized(w.slope[i].y, n)}
+	}
 }
 
 func sized(s []float64, n int) []float64 {
