@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
 	"sort"
 	"strings"
 
@@ -40,11 +41,11 @@ func InspectText(w io.Writer, file string, s *spectrum.Spectrum, audits []Audit,
 		of   func(spectrum.Segment) string
 	}{
 		{"medium", func(x spectrum.Segment) string { return by(string(x.Medium), x.MediumBy) }},
-		{"frame", func(x spectrum.Segment) string { return by(string(x.Frame), x.FrameBy) }},
+		{"frame", func(x spectrum.Segment) string { return by(frameWord(x.Frame), x.FrameBy) }},
 		{"corrections", shiftsText},
 		{"resolution", func(x spectrum.Segment) string {
 			if x.Resolution > 0 {
-				return "R = " + group(math.Round(x.Resolution))
+				return "R = " + number(math.Round(x.Resolution), 0)
 			}
 			return "not in the file"
 		}},
@@ -67,12 +68,14 @@ func InspectText(w io.Writer, file string, s *spectrum.Spectrum, audits []Audit,
 	} {
 		say(k.name, perSegment(s.Segments, k.of))
 	}
+	shared := sharedNotes(s.Segments)
+	say("notes", strings.Join(shared, "; "))
 	p.grid(g)
 	for _, n := range s.Notes {
 		p.para("  ! ", n, warn)
 	}
 	p.blank()
-	p.segments(s, audits)
+	p.segments(s, audits, shared)
 	return p.writeTo(w)
 }
 
@@ -112,14 +115,45 @@ func shiftsText(x spectrum.Segment) string {
 	return strings.Join(parts, "; ")
 }
 
+// frameWord is a velocity frame in a word, "" where it is not known.
 func frameWord(k frame.Kind) string {
-	if k == frame.Unknown {
-		return "an unknown frame"
+	switch k {
+	case frame.Heliocent:
+		return "heliocentric"
+	case frame.Barycentric:
+		return "barycentric"
+	case frame.Topocentric:
+		return "topocentric"
+	case frame.Geocentric:
+		return "geocentric"
+	case frame.Source:
+		return "of the source"
+	case frame.Unknown:
+		return ""
 	}
 	return string(k)
 }
 
-func (p *page) segments(s *spectrum.Spectrum, audits []Audit) {
+// sharedNotes are the notes that every one of several segments has.
+func sharedNotes(segs []spectrum.Segment) []string {
+	var out []string
+	if len(segs) < 2 {
+		return nil
+	}
+	for _, n := range segs[0].Notes {
+		all := true
+		for _, x := range segs[1:] {
+			all = all && slices.Contains(x.Notes, n)
+		}
+		if all {
+			out = append(out, n)
+		}
+	}
+	return out
+}
+
+// segments is a row for each segment; shared are notes that were told already.
+func (p *page) segments(s *spectrum.Spectrum, audits []Audit, shared []string) {
 	g := &grid{indent: 2, align: "llrrrrrrf", head: []string{"segment", "range (Å)", "pixels", "km/s", "bad", "S/N", "rms/σ", "ρ₁", "remarks"}}
 	for i, x := range s.Segments {
 		a := value(audits, i)
@@ -151,7 +185,12 @@ func (p *page) segments(s *spectrum.Spectrum, audits []Audit) {
 				rho = number(a.Noise.Rho[0], 2)
 			}
 		}
-		note := append([]string{}, x.Notes...)
+		var note []string
+		for _, n := range x.Notes {
+			if !slices.Contains(shared, n) {
+				note = append(note, n)
+			}
+		}
 		t := normal
 		if a.Why != "" {
 			note, t = append(note, a.Why), warn

@@ -2,6 +2,7 @@ package report
 
 import (
 	"io"
+	"regexp"
 	"strings"
 	"unicode"
 )
@@ -60,14 +61,22 @@ func (p *page) clean(s string) string {
 		}
 		return r
 	}, s)
+	s = unitSigns.Replace(negative.ReplaceAllString(s, "${1}−${2}"))
 	if p.o.ASCII {
 		s = ascii(s)
 	}
 	return s
 }
 
+// In text for people a negative number has a true minus sign and a unit its
+// exponent raised; notes are written in plain ASCII, for tables.
+var (
+	negative  = regexp.MustCompile(`(^|[\s([<>=±,])-(\.?\d)`)
+	unitSigns = strings.NewReplacer("cm-2", "cm⁻²", "cm-3", "cm⁻³", "N(H2)", "N(H₂)")
+)
+
 var asciiWords = strings.NewReplacer("±", "+/-", "−", "-", "–", "-", "—", "-", "…", "..", "Å", "A", "σ", "sigma", "·", "|", "─", "-",
-	"²", "2", "³", "3", "¹", "1", "⁻", "-", "⁺", "+", "₀", "0", "₂", "2", "τ", "tau", "λ", "lambda", "Δ", "d", "χ", "chi", "δ", "d", "γ", "gamma",
+	"²", "2", "³", "3", "¹", "1", "⁻", "-", "⁺", "+", "₀", "0", "₁", "1", "₂", "2", "τ", "tau", "λ", "lambda", "Δ", "d", "χ", "chi", "δ", "d", "γ", "gamma",
 	"ε", "eps", "ρ", "rho", "≤", "<=", "≥", ">=", "×", "x", "µ", "u", "μ", "u", "√", "sqrt", "▪", "#", "∞", "inf", "°", " deg", "∗", "*", "’", "'", "“", `"`, "”", `"`)
 
 func ascii(s string) string {

@@ -84,16 +84,16 @@ func (p *page) sightline(r survey.Record) {
 
 func spectrumText(s survey.SpectrumInfo) string {
 	t := fmt.Sprintf("%s: %s, %s, %s", s.File, s.Layout, count(s.Orders, "order"), by(s.Medium, s.MediumBy))
-	t += ", " + by(s.Frame, s.FrameBy)
+	t += ", " + by(frameWord(frame.Kind(s.Frame)), s.FrameBy)
 	for _, a := range s.Shifts {
 		state := "applied"
 		if a.Done {
 			state = "already in the file"
 		}
-		t += fmt.Sprintf(", %s km/s to %s %s (%s)", minus(fmt.Sprintf("%+.3f", a.V)), a.To, state, a.Keyword)
+		t += fmt.Sprintf(", %s km/s to %s %s (%s)", minus(fmt.Sprintf("%+.3f", a.V)), frameWord(a.To), state, a.Keyword)
 	}
 	if s.R > 0 {
-		t += ", R " + by(group(s.R), s.RBy)
+		t += ", R " + by(number(s.R, 0), s.RBy)
 	}
 	for _, n := range s.Notes {
 		t += "; " + n

@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"io"
+	"math"
 	"strings"
 
 	"lacuna/budget"
@@ -76,7 +77,7 @@ func WidthText(w io.Writer, m measure.Width, kind frame.Kind, o Options) error {
 			more = append(more, "b = "+printNumber(m.AODB, 1, 2).text()+" km/s")
 		}
 		more = append(more, "largest τ "+number(m.TauPeak, 2))
-		if m.AODBias != 0 {
+		if math.Abs(m.AODBias) >= 0.0005 {
 			more = append(more, "noise bias "+minus(fmt.Sprintf("%+.1f", 100*m.AODBias))+" % (not corrected)")
 		}
 		cols.add(plainCell("apparent optical depth"), logCell(n), plainCell(strings.Join(more, ", ")))
@@ -171,7 +172,13 @@ func zeroText(z measure.Zero) string {
 		return ""
 	}
 	s := printNumber(budget.Number{X: z.Level, Shifts: []budget.Shift{{Cause: budget.ZeroLevel, D: z.Err}}}, 1, 4).text() + " of the continuum"
-	if z.By != "" {
+	switch z.By {
+	case "":
+	case "prior":
+		s += ", assumed"
+	case "user":
+		s += ", as given"
+	default:
 		s += ", from " + z.By
 	}
 	if z.Pixels > 0 {

@@ -56,8 +56,8 @@ Example: lacuna demo --out lantern`,
 				return err
 			}
 			if !c.Bool("json") {
-				fmt.Fprintf(c.App.Writer, "Truth:   %s (what the spectra were made from)\nFirst look: %s\n",
-					filepath.Join(dir, simulate.TruthName), filepath.Join(dir, "results", "figures"))
+				fmt.Fprintf(c.App.Writer, "Truth:   %s (what the spectra were made from)\nSee:     %s for a first look\n",
+					filepath.Join(dir, simulate.TruthName), filepath.Join(dir, "results", "figures", "Lantern_1-lines.svg"))
 			}
 			return nil
 		},

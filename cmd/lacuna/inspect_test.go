@@ -15,7 +15,7 @@ func TestInspect(t *testing.T) {
 	dir := demo(t)
 	red, uv := filepath.Join(dir, "lantern1_red.fits"), filepath.Join(dir, "lantern3_uv.fits")
 	text := works(t, "inspect", red, uv)
-	for _, w := range []string{"Lantern 1", "air (", "TOPOCENT (SPECSYS)", "+13.210 km/s to HELIOCEN, to be applied (VHELIO)", "R = 65 000",
+	for _, w := range []string{"Lantern 1", "air (", "topocentric (SPECSYS)", "+13.210 km/s to heliocentric, to be applied (VHELIO)", "R = 65000",
 		"order 98", "Na I 5889.95", "K I 7698.96", "rms/σ", "Lantern 3", "vacuum (", "Zn II 2026.14"} {
 		if !strings.Contains(text, w) {
 			t.Errorf("no %q in\n%s", w, text)
@@ -33,11 +33,14 @@ func TestInspect(t *testing.T) {
 		t.Errorf("--medium is not told:\n%s", text)
 	}
 	r := lacuna(t, "inspect", "--json", red)
-	var all []struct {
-		File string
+	var all []fileFacts
+	if err := json.Unmarshal([]byte(r.out), &all); err != nil || r.code != 0 || len(all) != 1 || all[0].File != red || len(all[0].Segments) != 2 {
+		t.Fatalf("--json: exit code %d, %v, %+v", r.code, err, all)
 	}
-	if err := json.Unmarshal([]byte(r.out), &all); err != nil || r.code != 0 || len(all) != 1 || all[0].File != red {
-		t.Errorf("--json: exit code %d, %v, %+v", r.code, err, all)
+	s := all[0].Segments[0]
+	if s.Order != 98 || s.Medium != "air" || s.Frame != "TOPOCENT" || len(s.Shifts) != 1 || s.Shifts[0].V != 13.21 || !s.HasErrors ||
+		!(s.Range[0] > 5849 && s.Range[1] < 5934) || !(s.NoiseRatio > 0.7 && s.NoiseRatio < 0.86) || len(s.NoiseRho) == 0 || len(s.Lines) != 2 {
+		t.Errorf("--json: %+v", s)
 	}
 }
 
@@ -61,7 +64,7 @@ func TestInspectOneOfMany(t *testing.T) {
 // measured on a few windows, and resampling changes along a spectrum.
 func TestInspectReal(t *testing.T) {
 	text := works(t, "inspect", check.Shared(t, "realdata/cen-x3/ADP.2021-08-26T17_24_42.195.fits"))
-	if !strings.Contains(text, "+13.888 km/s to HELIOCEN, to be applied (ESO QC VRAD HELICOR)") {
+	if !strings.Contains(text, "+13.888 km/s to heliocentric, to be applied (ESO QC VRAD HELICOR)") {
 		t.Errorf("the correction of +13.888 km/s is not found:\n%s", text)
 	}
 	audits := regexp.MustCompile(`(?m)^  .* … .* (\S+) +(\S+)$`).FindAllStringSubmatch(text, -1)
