@@ -25,6 +25,7 @@ type Fit struct {
 	Telluric        string     `json:"telluric" toml:"telluric"` // mask, keep
 	Note            string     `json:"note,omitempty" toml:"note"`
 	Clouds          []FitCloud `json:"clouds,omitempty"` // none with Auto
+	Inherited       bool       `json:"-"`                // of [defaults]: a warning where it cannot be done
 
 	by origins
 }
@@ -57,7 +58,7 @@ func (l *loader) fits(x *Sightline, def common) {
 }
 
 func (l *loader) fit(x *Sightline, where string, m map[string]any, own bool) {
-	f := Fit{by: origins{}}
+	f := Fit{Inherited: !own, by: origins{}}
 	origin := "defaults"
 	if own {
 		origin = ""

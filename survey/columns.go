@@ -56,6 +56,9 @@ func (c *chain) columns(res *Result, s config.Sightline) error {
 			})
 		}
 	}
+	for _, f := range res.Fits {
+		res.Columns = append(res.Columns, f.Columns()...)
+	}
 	for _, col := range s.Columns {
 		res.Columns = append(res.Columns, given(col))
 	}
@@ -75,6 +78,9 @@ func (c *chain) columns(res *Result, s config.Sightline) error {
 			return err
 		}
 		res.Adopted = append(res.Adopted, col)
+		if v, ok := abundance.Compare(of, col); ok {
+			res.Verdicts = append(res.Verdicts, v)
+		}
 	}
 	for _, a := range s.Adopt {
 		if !slices.Contains(speciesOf(res.Columns), a.Species) && a.Method != "" {
@@ -209,7 +215,12 @@ func goodness(g cog.Result) float64 {
 	if g.DOF < 1 {
 		return 1
 	}
-	return distuv.ChiSquared{K: float64(g.DOF)}.Survival(g.Chi2)
+	return chance(g.Chi2, g.DOF)
+}
+
+// chance is the probability that χ² is as large by chance.
+func chance(chi2 float64, dof int) float64 {
+	return distuv.ChiSquared{K: float64(dof)}.Survival(chi2)
 }
 
 // Point is a measured width as the curve of growth wants it: shifts with a key

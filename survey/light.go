@@ -46,7 +46,7 @@ func (c *chain) lights(s config.Sightline) ([]Light, []SpectrumInfo, error) {
 func (c *chain) inputs(s config.Sightline) ([]Input, error) {
 	var out []Input
 	for _, sp := range s.Spectra {
-		for _, name := range []string{sp.File, sp.ContinuumFile} {
+		for _, name := range []string{sp.File, sp.ContinuumFile, sp.LineSpread} {
 			if name == "" {
 				continue
 			}

@@ -2,7 +2,6 @@ package survey
 
 import (
 	"fmt"
-	"math"
 	"slices"
 	"strings"
 
@@ -96,108 +95,6 @@ func (l Light) piece(t LineTask, table *atomic.Table) (measure.Piece, error) {
 		return p, fmt.Errorf("%s in %s: %w", t.Line.Name, l.Seg.Label, err)
 	}
 	return p, nil
-}
-
-// MeasureLines measures each line in every segment that holds its window. The
-// zero level of a segment is measured first, on all black cores among the lines
-// asked for in it; it replaces a prior, never the user's word. Lines that no
-// spectrum holds are an error, or for optional ones a sentence in missing; so is an
-// order that cannot be used where another one holds the line too.
-func MeasureLines(lights []Light, tasks []LineTask, table *atomic.Table) (widths []measure.Width, missing []string, err error) {
-	type job struct {
-		task, light int
-		piece       measure.Piece
-	}
-	var jobs []job
-	done := make([]int, len(tasks))     // widths of each task
-	failed := make([]error, len(tasks)) // the first error of each task
-	note := func(j job, err error) {
-		if failed[j.task] == nil {
-			failed[j.task] = err
-		}
-		missing = append(missing, fmt.Sprintf("%s is left out: %v", lights[j.light].Seg.Label, err))
-	}
-	for n, t := range tasks {
-		found := false
-		for k, l := range lights {
-			if t.File != "" && l.Seg.Source.File != t.File || t.Order != nil && l.Seg.Order != *t.Order || !l.covers(t.Line, t.Window) {
-				continue
-			}
-			found = true
-			j := job{task: n, light: k}
-			var err error
-			if j.piece, err = l.piece(t, table); err != nil {
-				note(j, err)
-				continue
-			}
-			jobs = append(jobs, j)
-		}
-		if !found {
-			err := notCovered(lights, t)
-			if !t.Optional {
-				return nil, nil, err
-			}
-			missing = append(missing, fmt.Sprintf("%s is not measured: no spectrum holds its window", t.Line.Name))
-		}
-	}
-	zeros := make([]measure.Zero, len(jobs)) // on the black core of each job's line; Pixels 0: none
-	for i, j := range jobs {
-		p := j.piece
-		cont := make([]float64, len(p.Wave))
-		p.Continuum.At(cont, p.Wave)
-		if z, ok := measure.ZeroLevel(p.Wave, p.Flux, cont, p.Continuum.Sigma, p.Continuum.Noise, p.Mask); ok {
-			zeros[i] = z
-		}
-	}
-	for i := range jobs {
-		if jobs[i].piece.Zero.By == "user" {
-			continue
-		}
-		var near []measure.Zero
-		for k, z := range zeros {
-			apart := math.Abs(jobs[k].piece.Line.Wave/jobs[i].piece.Line.Wave - 1)
-			if z.Pixels > 0 && jobs[k].light == jobs[i].light && apart < zeroReach {
-				near = append(near, z)
-			}
-		}
-		if near != nil {
-			jobs[i].piece.Zero = combineZeros(near)
-		}
-	}
-	for _, j := range jobs {
-		w, err := measure.Measure(j.piece)
-		if err != nil {
-			note(j, err)
-			continue
-		}
-		done[j.task]++
-		widths = append(widths, w)
-	}
-	for n, err := range failed {
-		if err != nil && done[n] == 0 { // no other order can stand in
-			return nil, nil, err
-		}
-	}
-	return widths, missing, nil
-}
-
-// zeroReach is how far, relative to its wavelength, a zero level holds: about one
-// order, also in spectra whose orders were merged (common practice, no source).
-const zeroReach = 0.01
-
-// combineZeros is the weighted mean of zero levels measured on several cores of
-// one order.
-func combineZeros(zs []measure.Zero) measure.Zero {
-	var sw, s float64
-	out := measure.Zero{By: zs[0].By}
-	for _, z := range zs {
-		w := 1 / (z.Err * z.Err)
-		sw += w
-		s += w * z.Level
-		out.Pixels += z.Pixels
-	}
-	out.Level, out.Err = s/sw, 1/math.Sqrt(sw)
-	return out
 }
 
 // notCovered says where the nearest data are.

@@ -8,7 +8,7 @@ import (
 )
 
 // Schema is the version of the journal's records.
-const Schema = 1
+const Schema = 2
 
 // A Record is one journal line: everything found on one sightline.
 type Record struct {
@@ -30,8 +30,10 @@ type Result struct {
 	Widths     []measure.Width       `json:"widths"`
 	Doublets   []measure.Doublet     `json:"doublets,omitempty"`
 	Growth     []cog.Result          `json:"growth,omitempty"`
-	Columns    []abundance.Column    `json:"columns"` // every method
-	Adopted    []abundance.Column    `json:"adopted"` // one a species, and sums over levels
+	Fits       []Fit                 `json:"fits,omitempty"`
+	Columns    []abundance.Column    `json:"columns"`            // every method
+	Verdicts   []abundance.Verdict   `json:"verdicts,omitempty"` // whether the methods agree, one a species
+	Adopted    []abundance.Column    `json:"adopted"`            // one a species, and sums over levels
 	Hydrogen   *abundance.Hydrogen   `json:"hydrogen,omitempty"`
 	Depletions []abundance.Depletion `json:"depletions,omitempty"`
 	Inputs     []Input               `json:"inputs"`

@@ -15,7 +15,7 @@ import (
 // Release is the program's version; Numerics changes whenever a number may.
 const (
 	Release  = "0.1.0"
-	Numerics = 2
+	Numerics = 3
 )
 
 // Version is the release with the revision it was built from, where known.

@@ -34,7 +34,7 @@ func (c *chain) record(s config.Sightline, index int, have func(string) (Record,
 	return rec, err
 }
 
-// sightline is the chain itself: spectra → widths → columns → abundances.
+// sightline is the chain itself: spectra → widths → clouds → columns → abundances.
 func (c *chain) sightline(s config.Sightline) (Result, error) {
 	res := Result{Scale: c.cfg.Scale, FSet: c.cfg.FSet, Frame: c.cfg.Frame}
 	lights, infos, err := c.lights(s)
@@ -47,11 +47,18 @@ func (c *chain) sightline(s config.Sightline) (Result, error) {
 		if err != nil {
 			return res, err
 		}
+		pieces, err := Cut(lights, tasks, c.table)
+		if err != nil {
+			return res, at(c.cfg.File, s.Name, err)
+		}
 		var missing []string
-		if res.Widths, missing, err = MeasureLines(lights, tasks, c.table); err != nil {
+		if res.Widths, missing, err = pieces.Measure(); err != nil {
 			return res, at(c.cfg.File, s.Name, err)
 		}
 		res.Warnings = append(res.Warnings, missing...)
+		if err := c.fits(&res, pieces, s); err != nil {
+			return res, at(c.cfg.File, s.Name, err)
+		}
 	}
 	if err := c.columns(&res, s); err != nil {
 		return res, at(c.cfg.File, s.Name, err)

@@ -1,0 +1,186 @@
+package survey
+
+import (
+	"math"
+	"slices"
+
+	"lacuna/config"
+	"lacuna/voigt/clouds"
+)
+
+// model turns the clouds of a fit into those of package clouds. starts gives log N of
+// species (in their order) in each cloud, for clouds that do not say.
+func model(f config.Fit, species []string, starts [][]float64) ([]clouds.Cloud, []clouds.Shared) {
+	var out []clouds.Cloud
+	for i, c := range f.Clouds {
+		out = append(out, cloud(f, c, species, starts[i]))
+	}
+	return out, offsets(f)
+}
+
+// offsets are the velocity offsets of species, the same in all clouds.
+func offsets(f config.Fit) []clouds.Shared {
+	var out []clouds.Shared
+	for _, s := range f.Offset {
+		out = append(out, clouds.Shared{Name: offsetName(s), Kind: clouds.Velocity, Par: clouds.Start(0)})
+	}
+	return out
+}
+
+func offsetName(species string) string { return "velocity offset of " + species }
+
+func cloud(f config.Fit, c config.FitCloud, species []string, start []float64) clouds.Cloud {
+	out := clouds.Cloud{Name: c.Name, V: par(c.V, c.V.To+": v"), Thermal: f.Thermal}
+	if f.Thermal {
+		out.T, out.Turb = par(*c.T, c.T.To+": T"), par(*c.Turbulence, c.Turbulence.To+": turbulence")
+	} else {
+		out.B = par(*c.B, c.B.To+": b")
+	}
+	for i, s := range species {
+		sp := clouds.Species{Carrier: s}
+		switch p, ok := c.Columns[s]; {
+		case ok && p.To != "":
+			sp.LogN = clouds.Follow("log N("+p.To+")", 1, math.Log10(ratio(p)))
+		case ok:
+			sp.LogN = par(p, "")
+		case c.Columns != nil:
+			continue // the cloud does not hold it
+		default:
+			sp.LogN = clouds.Start(start[i])
+		}
+		if p, ok := c.SpeciesB[s]; ok {
+			to := "b"
+			if _, own := c.SpeciesB[p.To]; own || !f.ShareB {
+				to = "b(" + p.To + ")"
+			}
+			sp.B = pointer(par(p, to))
+		} else if !f.ShareB {
+			sp.B = pointer(par(*c.B, c.B.To+": b("+s+")"))
+		}
+		if p, ok := c.SpeciesV[s]; ok {
+			to := "v"
+			if _, own := c.SpeciesV[p.To]; own || !f.ShareV {
+				to = "v(" + p.To + ")"
+			}
+			sp.V = pointer(par(p, to))
+		} else if !f.ShareV {
+			sp.V = pointer(par(c.V, c.V.To+": v("+s+")"))
+		} else if slices.Contains(f.Offset, s) {
+			sp.V = pointer(offset(s))
+		}
+		out.Species = append(out.Species, sp)
+	}
+	if !slices.ContainsFunc(out.Species, func(s clouds.Species) bool { return s.V == nil }) {
+		// Nobody moves with the cloud itself: its velocity is that of the first species.
+		out.V = clouds.Follow("v("+out.Species[0].Carrier+")", 1, 0)
+		if slices.Contains(f.Offset, out.Species[0].Carrier) {
+			out.V = par(c.V, c.V.To+": v") // the offset is from it
+		}
+	}
+	return out
+}
+
+func offset(species string) clouds.Par {
+	return clouds.Par{Tie: &clouds.Tie{Terms: []clouds.Term{{To: "v", Factor: 1}, {To: offsetName(species), Factor: 1}}}}
+}
+
+func pointer(p clouds.Par) *clouds.Par { return &p }
+
+func ratio(p config.Parameter) float64 {
+	if p.Ratio == nil {
+		return 1
+	}
+	return *p.Ratio
+}
+
+// par is a parameter of the user's; to is the full name of what it may follow.
+func par(p config.Parameter, to string) clouds.Par {
+	if p.To != "" {
+		add := 0.0
+		if p.Shift != nil {
+			add = *p.Shift
+		}
+		return clouds.Follow(to, ratio(p), add)
+	}
+	out := clouds.Start(*p.Start)
+	out.Fixed = p.Fixed
+	if p.Range != nil {
+		out = out.Within(p.Range[0], p.Range[1])
+	}
+	if p.Prior != nil {
+		out = out.Prior(*p.Prior, p.PriorErr)
+	}
+	return out
+}
+
+// like is what a cloud of an automatic fit looks like.
+func like(f config.Fit, species []string) clouds.Cloud {
+	out := clouds.Cloud{Thermal: f.Thermal}
+	if f.Thermal {
+		out.T, out.Turb = clouds.Start(100), clouds.Start(1)
+	}
+	for _, s := range species {
+		sp := clouds.Species{Carrier: s}
+		if !f.ShareB {
+			sp.B = pointer(clouds.Start(1))
+		}
+		if slices.Contains(f.Offset, s) {
+			sp.V = pointer(offset(s))
+		}
+		out.Species = append(out.Species, sp)
+	}
+	return out
+}
+
+// weak makes the column itself the parameter, in place of its logarithm, of those
+// species of a cloud that the fit did not detect there: its likelihood is then near
+// Gaussian, N ± σ, and the limit follows. Species that are fixed, bounded, tied, or
+// followed by others stay as they are; so do clouds of which nothing was detected. It
+// reports whether there was any.
+func weak(cs []clouds.Cloud, r clouds.Result) bool {
+	any := false
+	for i := range cs {
+		c := &cs[i]
+		k := slices.IndexFunc(r.Clouds, func(q clouds.CloudFit) bool { return q.Name == c.Name })
+		if k < 0 {
+			continue
+		}
+		seen := func(s string) bool {
+			j := slices.IndexFunc(r.Clouds[k].Species, func(q clouds.SpeciesFit) bool { return q.Carrier == s })
+			return j >= 0 && detected(r.Clouds[k].Species[j], r, c.Name)
+		}
+		if !slices.ContainsFunc(c.Species, func(s clouds.Species) bool { return seen(s.Carrier) }) {
+			continue
+		}
+		c.Species = slices.Clone(c.Species)
+		for j := range c.Species {
+			s := &c.Species[j]
+			p := s.LogN
+			if seen(s.Carrier) || p.Fixed || p.Tie != nil || p.Sigma != 0 || p.Lo != 0 || p.Hi != 0 || s.Boltzmann != nil || s.B != nil || followed(c.Species, s.Carrier) {
+				continue
+			}
+			x := math.Pow(10, p.Start)
+			s.Linear, s.LogN = true, clouds.Start(x)
+			any = true
+		}
+	}
+	return any
+}
+
+func followed(all []clouds.Species, carrier string) bool {
+	return slices.ContainsFunc(all, func(s clouds.Species) bool {
+		return s.LogN.Tie != nil && slices.ContainsFunc(s.LogN.Tie.Terms, func(t clouds.Term) bool { return t.To == "log N("+carrier+")" })
+	})
+}
+
+// detected: N above 3σ, both from the parabola of log N; a saturated column is badly
+// known, but it is there.
+func detected(s clouds.SpeciesFit, r clouds.Result, cloud string) bool {
+	if p, ok := r.Param(cloud + ": log N(" + s.Carrier + ")"); ok && p.Free {
+		if p.AtBound < 0 || p.Undetermined && s.Tau0 < 1 {
+			return false
+		}
+		return s.Tau0 > 2 || p.Err*math.Ln10 < 1./3
+	}
+	return true
+}

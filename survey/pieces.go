@@ -1,0 +1,148 @@
+package survey
+
+import (
+	"fmt"
+	"math"
+
+	"lacuna/atomic"
+	"lacuna/measure"
+)
+
+// Pieces are the neighbourhoods of lines, cut out of every segment that holds them,
+// with continua and zero levels: what widths and fits are made from.
+type Pieces struct {
+	lights  []Light
+	tasks   []LineTask
+	table   *atomic.Table
+	jobs    []job
+	failed  []error // the first error of each task
+	missing []string
+}
+
+// A job is one line in one segment.
+type job struct {
+	task, light int
+	piece       measure.Piece
+	prior       measure.Zero // zero level before any black core
+	core        bool         // the line has a black core, which gives the zero level
+}
+
+// note keeps the error of a line in an order that cannot be used.
+func (p *Pieces) note(j job, err error) {
+	if p.failed[j.task] == nil {
+		p.failed[j.task] = err
+	}
+	p.missing = append(p.missing, fmt.Sprintf("%s is left out: %v", p.lights[j.light].Seg.Label, err))
+}
+
+// Cut cuts the pieces of all tasks. The zero level of a segment is measured on all
+// black cores among the lines asked for in it; it replaces a prior, never the user's
+// word. A line that no spectrum holds is an error, or for an optional one a sentence
+// in what Measure returns as missing.
+func Cut(lights []Light, tasks []LineTask, table *atomic.Table) (*Pieces, error) {
+	p := &Pieces{lights: lights, tasks: tasks, table: table, failed: make([]error, len(tasks))}
+	for n, t := range tasks {
+		found := false
+		for k, l := range lights {
+			if t.File != "" && l.Seg.Source.File != t.File || t.Order != nil && l.Seg.Order != *t.Order || !l.covers(t.Line, t.Window) {
+				continue
+			}
+			found = true
+			j := job{task: n, light: k}
+			var err error
+			if j.piece, err = l.piece(t, table); err != nil {
+				p.note(j, err)
+				continue
+			}
+			j.prior = j.piece.Zero
+			p.jobs = append(p.jobs, j)
+		}
+		if !found {
+			err := notCovered(lights, t)
+			if !t.Optional {
+				return nil, err
+			}
+			p.missing = append(p.missing, fmt.Sprintf("%s is not measured: no spectrum holds its window", t.Line.Name))
+		}
+	}
+	p.zeros()
+	return p, nil
+}
+
+// zeros measures zero levels on black cores.
+func (p *Pieces) zeros() {
+	zeros := make([]measure.Zero, len(p.jobs)) // on the black core of each job's line; Pixels 0: none
+	for i, j := range p.jobs {
+		q := j.piece
+		cont := make([]float64, len(q.Wave))
+		q.Continuum.At(cont, q.Wave)
+		if z, ok := measure.ZeroLevel(q.Wave, q.Flux, cont, q.Continuum.Sigma, q.Continuum.Noise, q.Mask); ok {
+			zeros[i] = z
+			p.jobs[i].core = z.Pixels > 0
+		}
+	}
+	for i := range p.jobs {
+		if p.jobs[i].piece.Zero.By == "user" {
+			continue
+		}
+		var near []measure.Zero
+		for k, z := range zeros {
+			apart := math.Abs(p.jobs[k].piece.Line.Wave/p.jobs[i].piece.Line.Wave - 1)
+			if z.Pixels > 0 && p.jobs[k].light == p.jobs[i].light && apart < zeroReach {
+				near = append(near, z)
+			}
+		}
+		if near != nil {
+			p.jobs[i].piece.Zero = combineZeros(near)
+		}
+	}
+}
+
+// Measure measures each line in every segment that holds its window. An order that
+// cannot be used where another one holds the line too is a sentence in missing.
+func (p *Pieces) Measure() (widths []measure.Width, missing []string, err error) {
+	done := make([]int, len(p.tasks)) // widths of each task
+	for _, j := range p.jobs {
+		w, err := measure.Measure(j.piece)
+		if err != nil {
+			p.note(j, err)
+			continue
+		}
+		done[j.task]++
+		widths = append(widths, w)
+	}
+	for n, err := range p.failed {
+		if err != nil && done[n] == 0 { // no other order can stand in
+			return nil, nil, err
+		}
+	}
+	return widths, p.missing, nil
+}
+
+// MeasureLines cuts and measures.
+func MeasureLines(lights []Light, tasks []LineTask, table *atomic.Table) (widths []measure.Width, missing []string, err error) {
+	p, err := Cut(lights, tasks, table)
+	if err != nil {
+		return nil, nil, err
+	}
+	return p.Measure()
+}
+
+// zeroReach is how far, relative to its wavelength, a zero level holds: about one
+// order, also in spectra whose orders were merged (common practice, no source).
+const zeroReach = 0.01
+
+// combineZeros is the weighted mean of zero levels measured on several cores of
+// one order.
+func combineZeros(zs []measure.Zero) measure.Zero {
+	var sw, s float64
+	out := measure.Zero{By: zs[0].By}
+	for _, z := range zs {
+		w := 1 / (z.Err * z.Err)
+		sw += w
+		s += w * z.Level
+		out.Pixels += z.Pixels
+	}
+	out.Level, out.Err = s/sw, 1/math.Sqrt(sw)
+	return out
+}
