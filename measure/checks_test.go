@@ -146,3 +146,44 @@ func TestInverseOfCorrection(t *testing.T) {
 		}
 	}
 }
+
+// A component of known b and τ₀ behind an instrument of FWHM 5 km/s: the saturated
+// width must not be taken for a large b, and τ₀ comes back. The profile is the
+// convolution of exp(−τ) by plain summation; the estimate averages three pixels and
+// counts them with the instrument's profile, which is good to 20 % here.
+func TestSaturatedComponentIsSeenThrough(t *testing.T) {
+	const fwhm, dv, n = 5.0, 0.05, 4001
+	sd := fwhm / math.Sqrt(8*math.Ln2)
+	for _, c := range []struct{ b, tau0 float64 }{{2.5, 0.3}, {2.5, 2}, {2.5, 5}, {4, 4}, {8, 3}} {
+		fine := make([]float64, n)
+		for i := range fine {
+			v := dv * float64(i-n/2)
+			fine[i] = math.Exp(-c.tau0 * math.Exp(-v*v/(c.b*c.b)))
+		}
+		const step = 20 // pixels of 1 km/s
+		m := n/step - 40
+		wave, flux := make([]float64, m), make([]float64, m)
+		for k := range flux {
+			at := (k + 20) * step
+			sum, norm := 0.0, 0.0
+			for j := -400; j <= 400; j++ {
+				x := dv * float64(j) / sd
+				g := math.Exp(-x * x / 2)
+				sum, norm = sum+g*fine[at+j], norm+g
+			}
+			wave[k], flux[k] = wavelength(nad.Wave, dv*float64(at-n/2)), sum/norm
+		}
+		p := Piece{Line: nad, Wave: wave, Flux: flux, Window: [2]float64{-40, 40}, FWHM: fwhm, B: 0.5, Continuum: flat(1, 0, wave, constant(0.001, m))}
+		w, err := newWork(p)
+		if err != nil {
+			t.Fatal(err)
+		}
+		w.describe()
+		w.out.Window = p.Window
+		w.out.W = w.width(w.cover(-40, 40))
+		tau0, b := w.opticalDepth()
+		if !(math.Abs(math.Log(tau0/c.tau0)) < 0.25) || !(math.Abs(b/c.b-1) < 0.2) {
+			t.Errorf("b = %g, τ₀ = %g came back as b = %.2f, τ₀ = %.2f", c.b, c.tau0, b, tau0)
+		}
+	}
+}

@@ -26,14 +26,11 @@ const (
 
 // opticalDepth estimates the central optical depth tau0 that the deepest part of
 // the line has behind the instrument, as one Gaussian component of Doppler
-// parameter b. Its b is what is left of the width of the deepest dip when the
-// instrument's is taken off in quadrature, not less than the b assumed: a dip no
-// wider than the instrument may hide a component as narrow as that. tau0 gives the
-// observed depth d,
-//
-//	b F(τ₀) = √π d √(b² + b_inst²),  F: the curve of growth,
-//
-// and is not less than the optical depth seen there.
+// parameter b: the component that, seen through the instrument (see blurred), has
+// the depth and the width of the deepest dip. Saturation widens a component, so the
+// width alone would give too large a b. b is not less than the b assumed: a dip no
+// wider than the instrument may hide a component as narrow as that. tau0 is not less
+// than the optical depth seen, and its width not more than W.
 func (w *work) opticalDepth() (tau0, b float64) {
 	o := &w.out
 	wv := o.W.X / w.p.Line.Wave * atomic.C
@@ -45,9 +42,19 @@ func (w *work) opticalDepth() (tau0, b float64) {
 	box := float64(2*w.half()+1) * w.pixel()
 	inst := math.Hypot(w.p.FWHM/fwhmPerB, box/math.Sqrt(6)) // b² = 2σ², σ² = box²/12
 	obs := min(wv/(math.Sqrt(math.Pi)*depth), w.dipWidth(at, depth)/fwhmPerB)
-	b = max(o.B, math.Sqrt(max(0, obs*obs-inst*inst)))
-	dip := min(wv, math.Sqrt(math.Pi)*depth*math.Hypot(b, inst))
-	return min(max(growthInverse(dip/b), peak), 1e9), b
+	b = o.B
+	if lo, hi := o.B, obs; hi > lo && blurredWidth(blurredTau(depth, lo, inst), lo, inst) < obs*fwhmPerB {
+		for range 14 { // to 1e-4
+			b = (lo + hi) / 2
+			if blurredWidth(blurredTau(depth, b, inst), b, inst) > obs*fwhmPerB {
+				hi = b
+			} else {
+				lo = b
+			}
+		}
+	}
+	tau0 = min(blurredTau(depth, b, inst), growthInverse(max(wv, 0)/b))
+	return min(max(tau0, peak), mostTau), b
 }
 
 // half is how many pixels on each side of one are averaged before its depth is
