@@ -84,3 +84,13 @@ func BenchmarkChi2(b *testing.B) {
 		f.Chi2(x)
 	}
 }
+
+// BenchmarkNew is the cost of a new problem: mostly that of the instrument's matrix.
+func BenchmarkNew(b *testing.B) {
+	f, _ := crowd(b, 5, 2, 1)
+	for b.Loop() {
+		if _, err := New(f.in, Options{}); err != nil {
+			b.Fatal(err)
+		}
+	}
+}

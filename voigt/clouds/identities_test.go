@@ -237,7 +237,7 @@ func TestStrengthError(t *testing.T) {
 	_, r := fit(t, p)
 	want := d1.FErr / d1.F / math.Ln10
 	for _, c := range r.Clouds {
-		if got := c.Species[0].LogN.ErrBy(budget.FValue); !(math.Abs(got/want-1) <= 1e-6) {
+		if got := c.Species[0].LogN.ErrBy(budget.FValue); !(math.Abs(got/want-1) <= 1e-4) { // the cut of the derivatives
 			t.Errorf("%s: %.8f dex by f, want %.8f", c.Name, got, want)
 		}
 	}

@@ -126,6 +126,10 @@ type WindowFit struct {
 	Whiteness Tests      `json:"tests"`
 }
 
+// thinTau is the central optical depth up to which a line is thin, to about a tenth
+// (F/F_linear = 1 − τ₀/2√2 + …).
+const thinTau = 0.3
+
 // limitSigma is the confidence of the limits that Fit itself gives.
 const limitSigma = 3
 
@@ -205,15 +209,18 @@ func (r *Result) params(f *Fitter, a *analysis) {
 	}
 }
 
-// number makes a Number of a function of the parameters with value x and gradient g.
+// number makes a Number of a function of the parameters p with value x and gradient g:
+// NaN if the data do not determine it.
 func (a *analysis) number(x float64, g []float64, p ...Param) budget.Number {
 	n := budget.Number{X: x}
+	lost := !a.determined(g)
 	for _, q := range p {
 		if q.AtBound != 0 {
 			n.Flag |= budget.AtBound
 		}
+		lost = lost || q.Undetermined
 	}
-	if !a.determined(g) {
+	if lost {
 		n.X = math.NaN()
 		return n
 	}
@@ -261,8 +268,11 @@ func (r *Result) species(f *Fitter, a *analysis, d *comp) SpeciesFit {
 		}
 		out.B = budget.Limit(out.B, d.B+limitSigma*bErr, limitSigma)
 	}
-	if d.linear {
-		out.N = a.number(d.N, gn, pn)
+	// A column that is not detected is N ± σ with a limit, whichever of N and log N was the
+	// parameter: while the line is thin, flux is linear in N, not in log N.
+	pn.Undetermined = false
+	out.N = a.number(d.N, d.columnGradient(a.n), pn)
+	if faint := out.N.X < limitSigma*out.N.Without(budget.FValue) && out.Tau0 < thinTau; d.linear || faint {
 		out.LogN = budget.Log10(limited(out.N))
 	} else {
 		out.LogN = a.number(d.logN(), gn, pn)

@@ -102,7 +102,7 @@ func (f *Fitter) Sampler(r Result, o SamplerOptions) (Sample, error) {
 	if o.Walkers%2 != 0 || o.Walkers < n+2 {
 		return Sample{}, oops.Inputf("", "sampler", "give an even number above that of the parameters", "%d walkers for %d parameters", o.Walkers, n)
 	}
-	if err := f.finer(r.X); err != nil {
+	if err := f.finer(r); err != nil {
 		return Sample{}, err
 	}
 	e := newEnsemble(f, r, o)
@@ -137,12 +137,17 @@ func (f *Fitter) Sampler(r Result, o SamplerOptions) (Sample, error) {
 	return s, nil
 }
 
-// finer makes sub-grids that also serve clouds a third as wide, for points far from x.
-func (f *Fitter) finer(x []float64) error {
-	y := slices.Clone(x)
+// finer makes sub-grids that also serve narrower clouds than those of r: by 4σ, at most
+// a third as wide.
+func (f *Fitter) finer(r Result) error {
+	y := slices.Clone(r.X)
 	for j, i := range f.params.free {
 		if p := &f.params.all[i]; p.kind == Doppler {
-			y[j] = max(p.lo, x[j]/3)
+			e := math.Sqrt(r.a.cov.At(j, j))
+			if e == 0 {
+				e = r.X[j]
+			}
+			y[j] = max(p.lo, r.X[j]/3, r.X[j]-4*e)
 		}
 	}
 	err := f.regrid(y)

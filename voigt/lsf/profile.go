@@ -58,9 +58,11 @@ type Sum []Component
 // Below is the sum of the error integrals.
 func (s Sum) Below(wave, x float64) float64 {
 	y := 0.0
-	for _, c := range s {
+	table := nodes()
+	for i := range s {
+		c := &s[i]
 		sigma := c.FWHM(wave) / fwhmBySigma
-		y += c.Weight * 0.5 * math.Erfc((c.Shift*wave/atomic.C-x)/(sigma*math.Sqrt2))
+		y += c.Weight * normal(table, (x-c.Shift*wave/atomic.C)/sigma)
 	}
 	return y
 }

@@ -3,6 +3,7 @@ package lsf
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/floats"
 
@@ -156,6 +157,9 @@ func (r *Response) weigh(edges []float64, p Profile, step float64) error {
 		}
 		floats.Scale(1/sum, all[from:])
 		r.First[i], sizes[i] = first, last-first
+		if i == 0 { // the others are about as long
+			all = slices.Grow(all, (len(all)+2)*len(r.First))
+		}
 		left, right = right, left
 	}
 	for i, n := range sizes {
@@ -175,14 +179,18 @@ type band struct {
 func (b *band) set(sub []float64, edge float64, p Profile) {
 	reach := p.Reach(edge)
 	b.first = atLeast(sub, edge-reach)
-	b.p = b.p[:0]
+	n := atLeast(sub[b.first:], math.Nextafter(edge+reach, math.Inf(1)))
+	b.p = slices.Grow(b.p[:0], n)[:n]
 	least := p.Below(edge, -reach)
 	scale := 1 / (p.Below(edge, reach) - least)
-	for _, w := range sub[b.first:] {
-		if w > edge+reach {
-			break
+	for i, w := range sub[b.first : b.first+n] {
+		y := (p.Below(w, edge-w) - least) * scale
+		if y < 0 {
+			y = 0
+		} else if y > 1 {
+			y = 1
 		}
-		b.p = append(b.p, min(max(0, (p.Below(w, edge-w)-least)*scale), 1))
+		b.p[i] = y
 	}
 }
 
