@@ -5,6 +5,9 @@ Run from the repository root, pinned to one core:
 
     taskset -c 0 /usr/bin/python3 bench/fit_scipy.py [runs]
 
+With "solve" in place of the runs it prints a few spectra with SciPy's solutions as JSON and
+times nothing: for the test of ./voigt/clouds.
+
 The problem: Na I D1 + D2 in 242 pixels at R = 80 000 (pixels of 1.2 σ), S/N 100, K clouds
 tied over both lines, a sub-grid of 5 points a pixel, starts off by 0.15 dex, 0.5 km/s
 and 20 % in b. Both sides get the same spectra, the same starts and the same sub-grid; the
@@ -72,6 +75,23 @@ def fit(data, start):
     return least_squares(lambda x: (model(x) - data) * SN, start.ravel(), bounds=(lo, hi), x_scale="jac")
 
 
+def setup():
+    return {"lines": LINES, "sub": grid.tolist(), "kernel": KERNEL.tolist(), "fine": FINE, "pixels": NPIX,
+            "pixel": PIXEL, "fwhm": FWHM, "sn": SN}
+
+
+def solve():
+    out = setup()
+    out["cases"] = []
+    for k, seed in [(1, 0), (1, 1), (2, 0), (2, 1), (3, 0), (5, 0), (5, 1), (8, 0)]:
+        _, data, start = case(k, seed)
+        sol = fit(data, start)
+        cov = np.linalg.inv(sol.jac.T @ sol.jac)
+        out["cases"].append({"k": k, "data": data.tolist(), "start": start.tolist(), "chi2": 2 * sol.cost,
+                             "x": sol.x.tolist(), "cov": cov.ravel().tolist()})
+    json.dump(out, sys.stdout)
+
+
 def main():
     runs = int(sys.argv[1]) if len(sys.argv) > 1 else 3
     cases = {1: 20, 5: 20, 8: 10}
@@ -80,11 +100,8 @@ def main():
         subprocess.run(["go", "test", "-c", "-o", binary, "./voigt/clouds"], check=True)
         spectra = {k: [case(k, s) for s in range(n)] for k, n in cases.items()}
         with open(given, "w") as out:
-            json.dump({
-                "lines": LINES, "sub": grid.tolist(), "kernel": KERNEL.tolist(), "fine": FINE, "pixels": NPIX,
-                "pixel": PIXEL, "fwhm": FWHM, "sn": SN,
-                "cases": [{"k": k, "data": d.tolist(), "start": s.tolist()} for k, l in spectra.items() for _, d, s in l],
-            }, out)
+            json.dump(dict(setup(), cases=[{"k": k, "data": d.tolist(), "start": s.tolist()}
+                                           for k, l in spectra.items() for _, d, s in l]), out)
         env = dict(os.environ, GOMAXPROCS="1", LACUNA_FIT_CASES=given, LACUNA_FIT_RESULTS=got)
         scipy_ms = {k: [] for k in cases}
         ours = {k: [] for k in cases}
@@ -127,4 +144,4 @@ def main():
 
 
 if __name__ == "__main__":
-    main()
+    solve() if sys.argv[1:] == ["solve"] else main()

@@ -8,78 +8,7 @@ import (
 	"os"
 	"syscall"
 	"testing"
-
-	"lacuna/atomic"
-	"lacuna/voigt/lsf"
 )
-
-// fitCases is what bench/fit_scipy.py hands over.
-type fitCases struct {
-	Lines  [][3]float64
-	Sub    []float64 // km/s
-	Kernel []float64
-	Fine   int
-	Pixels int
-	Pixel  float64 // km/s
-	FWHM   float64
-	SN     float64
-	Cases  []fitCase
-}
-
-type fitCase struct {
-	K     int
-	Data  []float64
-	Start [][]float64
-}
-
-func (c *fitCases) problem(k fitCase, degree int) Problem {
-	var p Problem
-	for i, q := range c.Lines {
-		l := atomic.Line{Name: []string{"D2", "D1"}[i], Species: "Na I", Wave: q[0], F: q[1], Gamma: q[2]}
-		w := Window{Lines: []atomic.Line{l}, WidthErr: -1, Degree: degree,
-			Profile: lsf.Sum{{Weight: 1, FWHM: lsf.Constant(l.Wave * c.FWHM / atomic.C)}}}
-		for j := range c.Pixels + 1 {
-			v := (float64(j) - float64(c.Pixels)/2) * c.Pixel
-			w.Edges = append(w.Edges, l.Wave*(1+v/atomic.C))
-			if j > 0 {
-				w.Wave = append(w.Wave, (w.Edges[j]+w.Edges[j-1])/2)
-				w.Flux = append(w.Flux, k.Data[i*c.Pixels+j-1])
-				w.Err = append(w.Err, 1/c.SN)
-			}
-		}
-		p.Windows = append(p.Windows, w)
-	}
-	for _, s := range k.Start {
-		p.Clouds = append(p.Clouds, Cloud{V: Par{Start: s[0], Lo: -1e3, Hi: 1e3}, B: Start(s[1]), Species: []Species{{Carrier: "Na I", LogN: Start(s[2])}}})
-	}
-	return p
-}
-
-// asScript puts the sub-grid of the script in the place of our own: its kernel, and the
-// mean of its points in each pixel.
-func (c *fitCases) asScript(f *Fitter) {
-	for _, w := range f.wins {
-		l := w.in.Lines[0]
-		g := &grid{fwhm: c.FWHM, b: 1e-9}
-		for _, v := range c.Sub {
-			g.sub = append(g.sub, l.Wave*(1+v/atomic.C))
-		}
-		n := len(c.Kernel) + c.Fine - 1
-		row := make([]float64, n)
-		for s := range c.Fine {
-			for j, k := range c.Kernel {
-				row[s+j] += k / float64(c.Fine)
-			}
-		}
-		for i := range c.Pixels {
-			g.first = append(g.first, i*c.Fine)
-			g.weight = append(g.weight, row)
-		}
-		g.trimAll()
-		w.grid = g
-		w.room()
-	}
-}
 
 // TestFitCases times the fits of bench/fit_scipy.py, which runs it.
 func TestFitCases(t *testing.T) {
