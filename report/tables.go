@@ -27,7 +27,7 @@ func numberCells(n budget.Number, k float64, decimals int) (kind, x, up, lo tabl
 	case "none":
 		return table.Missing, table.Missing, table.Missing, table.Missing
 	case "upper", "lower":
-		return kind, table.Num(table.RoundLimit(n.X*k, decimals+guardDigits, n.Kind() == "upper")), table.Missing, table.Missing
+		return kind, table.Num(outward(n.X*k, decimals+guardDigits, n.Kind() == "upper")), table.Missing, table.Missing
 	}
 	u, l := n.ErrUp()*k, n.ErrLo()*k
 	d := decimals + guardDigits

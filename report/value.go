@@ -2,6 +2,7 @@ package report
 
 import (
 	"math"
+	"strconv"
 	"strings"
 
 	"lacuna/budget"
@@ -26,11 +27,11 @@ func printNumber(n budget.Number, k float64, decimals int) printed {
 	switch p.kind {
 	case "none":
 	case "upper", "lower":
-		p.x = table.RoundLimit(n.X*k, decimals, p.kind == "upper")
+		p.x = outward(n.X*k, decimals, p.kind == "upper")
 	case "interval":
 		lo, hi := n.Range()
-		p.x = table.RoundLimit(lo*k, decimals, false)
-		p.up = table.RoundLimit(hi*k, decimals, true)
+		p.x = outward(lo*k, decimals, false)
+		p.up = outward(hi*k, decimals, true)
 	default:
 		up, lo := n.ErrUp()*k, n.ErrLo()*k
 		if !(up > 0) && !(lo > 0) {
@@ -42,6 +43,15 @@ func printNumber(n budget.Number, k float64, decimals int) printed {
 		p.loose = finite(up, lo) && math.Min(up, lo) > 1e3*math.Max(math.Abs(n.X*k), 1)
 	}
 	return p
+}
+
+// outward rounds a limit away from what it excludes, but not for the last digits
+// that arithmetic leaves: 20.449999999999996 is 20.45.
+func outward(x float64, decimals int, upper bool) string {
+	if y, err := strconv.ParseFloat(strconv.FormatFloat(x, 'g', 12, 64), 64); err == nil {
+		x = y
+	}
+	return table.RoundLimit(x, decimals, upper)
 }
 
 // text joins the parts: "48.6 ± 0.5", "11.84 +0.03 −0.02", "< 2.1", "20.9 … 21.2".
@@ -117,7 +127,7 @@ func printWidth(w measure.Width) printed {
 
 // printWidthLimit prints the upper limit of a line that is not detected, in mÅ.
 func printWidthLimit(w measure.Width) string {
-	return table.RoundLimit(w.Limit*mA, widthDecimals(w.Limit*mA), true)
+	return outward(w.Limit*mA, widthDecimals(w.Limit*mA), true)
 }
 
 // columnDecimals is the number of decimals of log N without an error.

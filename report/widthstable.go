@@ -109,7 +109,7 @@ func widthRow(r survey.Record, w measure.Width) []table.Cell {
 	kind, x, err := table.Str("value"), meas, measErr
 	limit := table.Missing
 	if w.Limit > 0 {
-		limit = table.Num(table.RoundLimit(w.Limit*mA, widthDecimals(w.Limit*mA)+guardDigits, true))
+		limit = table.Num(outward(w.Limit*mA, widthDecimals(w.Limit*mA)+guardDigits, true))
 	}
 	switch {
 	case !meas.Set:

@@ -94,7 +94,11 @@ func why(m measure.Width) string {
 	var parts []string
 	switch m.Linear.Kind() {
 	case "lower":
-		parts = append(parts, "lower limit: the line is saturated")
+		if m.Saturated != "" {
+			parts = append(parts, "lower limit: the line is saturated")
+		} else {
+			parts = append(parts, "lower limit: not thin enough for this relation")
+		}
 	case "upper":
 		parts = append(parts, "upper limit")
 	case "marginal":

@@ -68,7 +68,11 @@ Example: lacuna growth growth.toml --out growth-results`,
 			if err := report.GrowthText(c.App.Writer, records, textOptions(c)); err != nil {
 				return err
 			}
-			fmt.Fprintf(c.App.Writer, "\nResults: %s (growth.ecsv, figures/)\n", out)
+			what := "growth.ecsv, figures/"
+			if c.Bool("no-figures") {
+				what = "growth.ecsv"
+			}
+			fmt.Fprintf(c.App.Writer, "\nResults: %s (%s)\n", out, what)
 			return runErr
 		},
 	}

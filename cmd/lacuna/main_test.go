@@ -107,8 +107,18 @@ var (
 // demo runs the demo once for all tests and returns its folder.
 func demo(t testing.TB) string {
 	t.Helper()
-	demoOnce.Do(func() {
-		demoSaid = lacuna(t, "demo", "--out", demoDir)
+	demoOnce.Do(func() { // in the folder above, by its own default, as in the manual
+		here, err := os.Getwd()
+		if err != nil {
+			t.Fatal(err)
+		}
+		if err := os.Chdir(filepath.Dir(demoDir)); err != nil {
+			t.Fatal(err)
+		}
+		demoSaid = lacuna(t, "demo")
+		if err := os.Chdir(here); err != nil {
+			t.Fatal(err)
+		}
 	})
 	if demoSaid.code != 0 {
 		t.Fatalf("the demo failed:\n%s", demoSaid.err)
