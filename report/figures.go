@@ -6,11 +6,12 @@ import (
 )
 
 // Figures returns every figure of one sightline: its lines, a curve of growth for
-// each species that has one, and its depletions. Their names begin with
+// each species that has one, its fitted clouds, and its depletions. Their names begin with
 // config.Slug of the sightline's name, so that no two sightlines share one.
 func Figures(r survey.Record) []Figure {
 	out := LineFigures(r)
 	out = append(out, GrowthFigures(r)...)
+	out = append(out, CloudFigures(r)...)
 	if f, ok := DepletionFigure(r); ok {
 		out = append(out, f)
 	}

@@ -23,6 +23,7 @@ var (
 	midBlue    = color.NRGBA{0xB5, 0xD3, 0xE8, 255} // area under N_a(v)
 	paleOrange = color.NRGBA{0xF9, 0xE3, 0xB4, 255} // placement of the continuum
 	paleGrey   = color.NRGBA{0xCA, 0xCA, 0xCA, 255} // masked pixels
+	palePurple = color.NRGBA{0xEF, 0xE1, 0xEA, 255} // lines of the air
 	midGrey    = color.NRGBA{0x80, 0x80, 0x80, 255}
 )
 

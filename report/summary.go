@@ -66,9 +66,14 @@ func (p *page) sightline(r survey.Record) {
 		p.blank()
 		p.growth(res.Growth)
 	}
+	if len(res.Fits) > 0 {
+		p.blank()
+		p.clouds(res.Fits)
+	}
 	if len(res.Adopted) > 0 {
 		p.blank()
 		p.adopted(res.Adopted)
+		p.verdicts(res.Verdicts)
 	}
 	if res.Hydrogen != nil || len(res.Depletions) > 0 {
 		p.blank()

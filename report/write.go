@@ -20,13 +20,13 @@ import (
 const figuresFolder = "figures"
 
 // WriteResults writes into a results folder the tables widths, columns,
-// depletions and growth (ECSV), and every figure of every sightline (SVG). Each
+// depletions, growth and clouds (ECSV), and every figure of every sightline (SVG). Each
 // file appears whole or not at all.
 func WriteResults(dir string, rs []survey.Record) error {
 	for _, t := range []struct {
 		name string
 		made *table.Table
-	}{{"widths", Widths(rs)}, {"columns", Columns(rs)}, {"depletions", Depletions(rs)}, {"growth", Growth(rs)}} {
+	}{{"widths", Widths(rs)}, {"columns", Columns(rs)}, {"depletions", Depletions(rs)}, {"growth", Growth(rs)}, {"clouds", Clouds(rs)}} {
 		if err := disk.AtomicWrite(filepath.Join(dir, t.name+".ecsv"), t.made.WriteECSV); err != nil {
 			return err
 		}
