@@ -43,7 +43,7 @@ type FitWindow struct {
 	Used     []bool       `json:"used"`
 	Clouds   []FitCurve   `json:"clouds"` // in the order of Result.Clouds
 	Telluric [][2]float64 `json:"telluric,omitempty"`
-	Others   []string     `json:"others,omitempty"` // what else absorbs here and is not in the fit
+	Others   []string     `json:"others,omitempty"` // transitions that may absorb here and are not in the fit
 }
 
 // A FitLine is one transition in a window.
@@ -158,6 +158,7 @@ func (p *Pieces) fit(f config.Fit, o FitOptions) (Fit, error) {
 		}
 		structure(&out.Result, totals)
 	}
+	p.flag(&out, f)
 	for i, k := range ks {
 		w, err := k.curves(fitter, i, out.Result)
 		if err != nil {
@@ -323,6 +324,31 @@ func structure(r *clouds.Result, with []clouds.Total) {
 	}
 }
 
+// flag marks the columns of a species all of whose lines lie on something else: blended,
+// in a stellar line, in lines of the air that were not masked.
+func (p *Pieces) flag(out *Fit, f config.Fit) {
+	for _, s := range out.Species {
+		all, any := budget.Blended|budget.InStellar|budget.InTelluric, false
+		if f.Telluric != "keep" {
+			all &^= budget.InTelluric
+		}
+		for _, w := range p.widths {
+			if slices.Contains(out.Lines, w.Line) && carrier(w) == s {
+				all &= w.Flag
+				any = true
+			}
+		}
+		if !any {
+			continue
+		}
+		for i := range out.Result.Totals {
+			if t := &out.Result.Totals[i]; t.Carrier == s {
+				t.N, t.LogN = t.N.With(all), t.LogN.With(all)
+			}
+		}
+	}
+}
+
 // curves fills a window with its model.
 func (k *patch) curves(f *clouds.Fitter, i int, r clouds.Result) (FitWindow, error) {
 	c, err := f.Curves(i, r.X)
@@ -398,6 +424,9 @@ func (o *Fit) warn(f config.Fit, ks []*patch) {
 		}
 	}
 	for _, d := range r.Degenerate {
+		if strings.Contains(d.A, ": b") && strings.Contains(d.B, ": log N") { // tables say so
+			continue
+		}
 		say("%s and %s are hardly told apart (correlation %+.2f)", d.A, d.B, d.Corr)
 	}
 	for _, k := range ks {
@@ -405,7 +434,7 @@ func (o *Fit) warn(f config.Fit, ks []*patch) {
 			say("%s: %s not used because lines of the air fall there", k.Name, pixels(k.masked))
 		}
 		if len(k.others) > 0 {
-			say("%s: what may absorb there too and is not in the fit: %s", k.Name, strings.Join(k.others, ", "))
+			say("%s: not in the fit, and may absorb there too: %s", k.Name, strings.Join(k.others, ", "))
 		}
 	}
 }

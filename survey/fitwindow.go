@@ -258,13 +258,13 @@ func (k *patch) dropAir(f config.Fit) {
 	})
 }
 
-// neighbours names what else absorbs in the windows.
+// neighbours names other transitions that may absorb in the windows.
 func (k *patch) neighbours(f config.Fit) {
 	for _, j := range k.jobs {
 		w := range0(f, j.piece.Window)
 		for _, n := range j.piece.Neighbours {
 			lo, hi := frame.Velocity(frame.Wavelength(n.Wave, n.Range[0]), j.piece.Line.Wave), frame.Velocity(frame.Wavelength(n.Wave, n.Range[1]), j.piece.Line.Wave)
-			if n.Negligible || lo > w[1] || hi < w[0] || slices.Contains(f.Lines, n.Name) || n.Kind == "telluric" && len(k.telluric) > 0 {
+			if n.Kind != "transition" || n.Negligible || lo > w[1] || hi < w[0] || slices.Contains(f.Lines, n.Name) {
 				continue
 			}
 			if s := n.Name; !slices.Contains(k.others, s) {

@@ -17,6 +17,7 @@ type Pieces struct {
 	jobs    []job
 	failed  []error // the first error of each task
 	missing []string
+	widths  []measure.Width // once measured
 }
 
 // A job is one line in one segment.
@@ -99,7 +100,8 @@ func (p *Pieces) zeros() {
 }
 
 // Measure measures each line in every segment that holds its window. An order that
-// cannot be used where another one holds the line too is a sentence in missing.
+// cannot be used where another one holds the line too is a sentence in missing. Fits
+// after it know what else absorbs in the windows.
 func (p *Pieces) Measure() (widths []measure.Width, missing []string, err error) {
 	done := make([]int, len(p.tasks)) // widths of each task
 	for _, j := range p.jobs {
@@ -116,6 +118,7 @@ func (p *Pieces) Measure() (widths []measure.Width, missing []string, err error)
 			return nil, nil, err
 		}
 	}
+	p.widths = widths
 	return widths, p.missing, nil
 }
 
