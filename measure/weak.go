@@ -133,16 +133,15 @@ func (w *work) hidden(tau0, b float64) {
 
 // ByDepth is the column that the apparent optical depth stands for, log₁₀ N: N_a
 // raised by half of what one cloud could hide behind the instrument (Hidden), with
-// that half as an error of structure, which lines of one species share. The truth
-// lies between N_a and N_a raised by all of it, as far as that one cloud goes.
-// A limit stays N_a. (Common practice, no source.)
+// all of it as an error of structure, which lines of one species share: the gas may
+// be in clouds still narrower than the one assumed. A limit stays N_a. (Common practice, no source.)
 func (o Width) ByDepth() budget.Number {
 	n := budget.Log10(o.AOD)
 	if o.Hidden == 0 || n.Kind() != "value" {
 		return n
 	}
 	n.X += o.Hidden / 2
-	n.Shifts = append(slices.Clone(n.Shifts), budget.Shift{Cause: budget.Structure, Key: structureKey(atomic.Line{Species: o.Species, Level: o.Level}), D: o.Hidden / 2})
+	n.Shifts = append(slices.Clone(n.Shifts), budget.Shift{Cause: budget.Structure, Key: structureKey(atomic.Line{Species: o.Species, Level: o.Level}), D: o.Hidden})
 	return n
 }
 
