@@ -67,7 +67,7 @@ func (e *exact) polish(x []float64, y, ylo, yhi float64, ws *lsq.Workspace) (lsq
 	if len(e.d.pts) < n+1 {
 		p = padded{e}
 	}
-	return lsq.Fit(p, start, lo, hi, lsq.Options{Tol: 1e-9}, ws)
+	return lsq.Fit(p, start, lo, hi, lsq.Options{Tol: 1e-13}, ws)
 }
 
 // padded adds a residual that is always 0.
