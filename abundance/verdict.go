@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 
 	"lacuna/budget"
 )
@@ -30,7 +31,7 @@ func (v Verdict) Text() string {
 		}
 		return fmt.Sprintf("%s: %s with %s within %.1fσ", v.Species, others, v.Against, math.Max(v.Sigma, 0.1))
 	}
-	return fmt.Sprintf("%s: %s differs from %s by %.1fσ (%+.2f dex)", v.Species, v.With, v.Against, v.Sigma, -v.Dex)
+	return fmt.Sprintf("%s: %s differs from %s by %.1fσ (%s dex)", v.Species, v.With, v.Against, v.Sigma, strings.Replace(fmt.Sprintf("%+.2f", -v.Dex), "-", "−", 1))
 }
 
 // Compare compares the columns of one species by all methods, limits included, with the

@@ -161,7 +161,7 @@ func (p *page) verdicts(vs []abundance.Verdict) {
 			agree = append(agree, v.Species)
 			continue
 		}
-		p.para("  ! ", minus(v.Text()), warn)
+		p.para("  ! ", v.Text(), warn)
 	}
 	if len(agree) > 0 {
 		p.para("  ", "methods agree within 2σ: "+strings.Join(agree, ", "), normal)

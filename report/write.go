@@ -78,7 +78,12 @@ func writeFigures(dir string, rs []survey.Record, of func(survey.Record) []Figur
 
 // WriteLineFigure writes the lines of one sightline to a file, SVG or PNG by its
 // ending. More than one page goes to name-2.svg, name-3.svg, …
-func WriteLineFigure(path string, r survey.Record) error {
+func WriteLineFigure(path string, r survey.Record) error { return writeTo(path, LineFigures(r)) }
+
+// WriteCloudFigure does the same for fitted clouds.
+func WriteCloudFigure(path string, r survey.Record) error { return writeTo(path, CloudFigures(r)) }
+
+func writeTo(path string, figures []Figure) error {
 	end := filepath.Ext(path)
 	write := Figure.WriteSVG
 	switch strings.ToLower(end) {
@@ -88,7 +93,7 @@ func WriteLineFigure(path string, r survey.Record) error {
 	default:
 		return oops.Input(path, "", fmt.Sprintf("a figure ending in %q cannot be written", end), "end the name with .svg or .png")
 	}
-	for i, f := range LineFigures(r) {
+	for i, f := range figures {
 		name := path
 		if i > 0 {
 			name = fmt.Sprintf("%s-%d%s", strings.TrimSuffix(path, end), i+1, end)

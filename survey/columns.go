@@ -91,6 +91,14 @@ func (c *chain) columns(res *Result, s config.Sightline) error {
 	return nil
 }
 
+// Columns fills the columns of a result that has widths and fits: by every method, the
+// adopted one of each species, and the verdicts. s gives the settings; its name marks
+// errors that lines share.
+func Columns(res *Result, s config.Sightline, table *atomic.Table) error {
+	c := &chain{table: table}
+	return c.columns(res, s)
+}
+
 // ofWidth gives the columns of one line: weak-line relation and apparent optical
 // depth, or the limit.
 func ofWidth(w measure.Width) []abundance.Column {

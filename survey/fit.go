@@ -131,6 +131,7 @@ func (p *Pieces) fit(f config.Fit, o FitOptions) (Fit, error) {
 	var fitter *clouds.Fitter
 	var cs []clouds.Cloud
 	var totals []clouds.Total // of an automatic fit, with their structure errors
+	var held []string         // clouds that are not there
 	if f.Auto {
 		found, err := search(f, o, ks, ws, out.Species)
 		if err != nil {
@@ -150,10 +151,17 @@ func (p *Pieces) fit(f config.Fit, o FitOptions) (Fit, error) {
 		if out.Result, err = fitter.Fit(); err != nil {
 			return out, err
 		}
+		begin := slices.Clone(cs)
 		cs = fitter.Clouds(out.Result.X)
+		if fitter, cs, held, err = absent(&out.Result, fitter, cs, begin, ws); err != nil {
+			return out, err
+		}
+		for _, name := range held {
+			out.Warnings = append(out.Warnings, name+" is not seen: its v and b are held at the start, and limits hold for them")
+		}
 	}
 	if len(cs) > 0 {
-		if fitter, err = refine(&out.Result, fitter, cs, ws, o.Sigma); err != nil {
+		if fitter, err = refine(&out.Result, fitter, cs, ws, held, o.Sigma); err != nil {
 			return out, err
 		}
 		structure(&out.Result, totals)
@@ -221,13 +229,69 @@ func alternatives(all []clouds.Solution) []clouds.Solution {
 	return out
 }
 
+// absent finds clouds of which no species is detected and without which χ² is less
+// than 9 larger. Their v and b mean nothing: they are held at the starts, one cloud after
+// the other, so that of two clouds in the place of one the other remains.
+func absent(r *clouds.Result, f *clouds.Fitter, cs, begin []clouds.Cloud, ws []clouds.Window) (*clouds.Fitter, []clouds.Cloud, []string, error) {
+	var held []string
+	for i := len(cs) - 1; i >= 0; i-- {
+		if !unseen(cs[i], *r) || needed(cs, cs[i].Name) {
+			continue
+		}
+		shared := f.SharedAt(r.X)
+		with := r.Chi2
+		less := slices.Delete(slices.Clone(cs), i, i+1)
+		if every(less, cs[i]) || len(less) == 0 { // the others hold all of its species: it can be left out
+			p := clouds.Problem{Windows: ws, Clouds: less, Shared: shared}
+			if len(less) == 0 {
+				p.Shared = nil
+			}
+			g, err := clouds.New(p, clouds.Options{})
+			if err != nil {
+				return nil, nil, nil, err
+			}
+			without, err := g.Fit()
+			if err != nil {
+				return nil, nil, nil, err
+			}
+			if without.Chi2-with > 9 {
+				continue
+			}
+		}
+		cs = slices.Clone(cs)
+		cs[i] = hold(cs[i], begin[i])
+		held = append(held, cs[i].Name)
+		g, err := clouds.New(clouds.Problem{Windows: ws, Clouds: cs, Shared: shared}, clouds.Options{})
+		if err != nil {
+			return nil, nil, nil, err
+		}
+		if *r, err = g.Fit(); err != nil {
+			return nil, nil, nil, err
+		}
+		f, cs = g, g.Clouds(r.X)
+	}
+	return f, cs, held, nil
+}
+
+// every reports whether clouds hold all species of another one.
+func every(cs []clouds.Cloud, c clouds.Cloud) bool {
+	for _, s := range c.Species {
+		if !slices.ContainsFunc(cs, func(o clouds.Cloud) bool {
+			return slices.ContainsFunc(o.Species, func(q clouds.Species) bool { return q.Carrier == s.Carrier })
+		}) {
+			return false
+		}
+	}
+	return true
+}
+
 // refine makes the columns of undetected species linear, with limits by Δχ², and the
 // errors of the others those of their profile likelihood where a parabola is a poor
 // guide.
-func refine(r *clouds.Result, f *clouds.Fitter, cs []clouds.Cloud, ws []clouds.Window, sigma float64) (*clouds.Fitter, error) {
+func refine(r *clouds.Result, f *clouds.Fitter, cs []clouds.Cloud, ws []clouds.Window, held []string, sigma float64) (*clouds.Fitter, error) {
 	conditional := r.Conditional
 	notes := r.Notes
-	if weak(cs, *r) {
+	if weak(cs, *r, held) {
 		g, err := clouds.New(clouds.Problem{Windows: ws, Clouds: cs, Shared: f.SharedAt(r.X)}, clouds.Options{})
 		if err != nil {
 			return nil, err

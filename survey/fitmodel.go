@@ -3,6 +3,7 @@ package survey
 import (
 	"math"
 	"slices"
+	"strings"
 
 	"lacuna/config"
 	"lacuna/voigt/clouds"
@@ -135,36 +136,82 @@ func like(f config.Fit, species []string) clouds.Cloud {
 // weak makes the column itself the parameter, in place of its logarithm, of those
 // species of a cloud that the fit did not detect there: its likelihood is then near
 // Gaussian, N ± σ, and the limit follows. Species that are fixed, bounded, tied, or
-// followed by others stay as they are; so do clouds of which nothing was detected. It
-// reports whether there was any.
-func weak(cs []clouds.Cloud, r clouds.Result) bool {
+// followed by others stay as they are. Clouds of which nothing was detected are left
+// alone unless they are among held. It reports whether there was any.
+func weak(cs []clouds.Cloud, r clouds.Result, held []string) bool {
 	any := false
 	for i := range cs {
 		c := &cs[i]
-		k := slices.IndexFunc(r.Clouds, func(q clouds.CloudFit) bool { return q.Name == c.Name })
-		if k < 0 {
-			continue
-		}
-		seen := func(s string) bool {
-			j := slices.IndexFunc(r.Clouds[k].Species, func(q clouds.SpeciesFit) bool { return q.Carrier == s })
-			return j >= 0 && detected(r.Clouds[k].Species[j], r, c.Name)
-		}
-		if !slices.ContainsFunc(c.Species, func(s clouds.Species) bool { return seen(s.Carrier) }) {
+		if !slices.Contains(held, c.Name) && unseen(*c, r) {
 			continue
 		}
 		c.Species = slices.Clone(c.Species)
 		for j := range c.Species {
 			s := &c.Species[j]
 			p := s.LogN
-			if seen(s.Carrier) || p.Fixed || p.Tie != nil || p.Sigma != 0 || p.Lo != 0 || p.Hi != 0 || s.Boltzmann != nil || s.B != nil || followed(c.Species, s.Carrier) {
+			if seen(s.Carrier, c.Name, r) || s.Linear || p.Fixed || p.Tie != nil || p.Sigma != 0 || p.Lo != 0 || p.Hi != 0 || s.Boltzmann != nil || s.B != nil && !s.B.Fixed || followed(c.Species, s.Carrier) {
 				continue
 			}
-			x := math.Pow(10, p.Start)
-			s.Linear, s.LogN = true, clouds.Start(x)
+			s.Linear, s.LogN = true, clouds.Start(math.Pow(10, p.Start))
 			any = true
 		}
 	}
 	return any
+}
+
+// seen reports whether a species was detected in a cloud.
+func seen(carrier, cloud string, r clouds.Result) bool {
+	for _, c := range r.Clouds {
+		for _, s := range c.Species {
+			if c.Name == cloud && s.Carrier == carrier {
+				return detected(s, r, cloud)
+			}
+		}
+	}
+	return false
+}
+
+// unseen: nothing of a cloud was detected.
+func unseen(c clouds.Cloud, r clouds.Result) bool {
+	return !slices.ContainsFunc(c.Species, func(s clouds.Species) bool { return seen(s.Carrier, c.Name, r) })
+}
+
+// hold fixes v and b of a cloud at its start, where both are free: what is not there
+// has neither.
+func hold(c clouds.Cloud, start clouds.Cloud) clouds.Cloud {
+	fix := func(p *clouds.Par, at clouds.Par) {
+		if p.Tie == nil {
+			*p = clouds.Fix(at.Start)
+		}
+	}
+	fix(&c.V, start.V)
+	fix(&c.B, start.B)
+	fix(&c.T, start.T)
+	fix(&c.Turb, start.Turb)
+	c.Species = slices.Clone(c.Species)
+	for j := range c.Species {
+		s := &c.Species[j]
+		if s.B != nil {
+			s.B = pointer(*s.B)
+			fix(s.B, *start.Species[j].B)
+		}
+		if s.V != nil {
+			s.V = pointer(*s.V)
+			fix(s.V, *start.Species[j].V)
+		}
+	}
+	return c
+}
+
+// needed reports whether other clouds refer to one by its name.
+func needed(cs []clouds.Cloud, name string) bool {
+	refers := func(p *clouds.Par) bool {
+		return p != nil && p.Tie != nil && slices.ContainsFunc(p.Tie.Terms, func(t clouds.Term) bool { return strings.HasPrefix(t.To, name+": ") })
+	}
+	return slices.ContainsFunc(cs, func(c clouds.Cloud) bool {
+		return refers(&c.V) || refers(&c.B) || refers(&c.T) || refers(&c.Turb) ||
+			slices.ContainsFunc(c.Species, func(s clouds.Species) bool { return refers(&s.LogN) || refers(s.B) || refers(s.V) })
+	})
 }
 
 func followed(all []clouds.Species, carrier string) bool {

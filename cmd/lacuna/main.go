@@ -94,7 +94,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			return &usageError{flagError(c, err) + "; options stand after the command, see lacuna --help"}
 		},
 		Commands: []*cli.Command{
-			demoCommand(), newCommand(), runCommand(), measureCommand(), growthCommand(),
+			demoCommand(), newCommand(), runCommand(), measureCommand(), fitCommand(), growthCommand(),
 			depleteCommand(), linesCommand(), inspectCommand(), velocityCommand(), completionCommand(), helpCommand(),
 		},
 		Action: func(c *cli.Context) error {

@@ -2,11 +2,14 @@ package main
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"github.com/urfave/cli/v2"
 
+	"lacuna/atomic"
 	"lacuna/config"
+	"lacuna/internal/oops"
 	"lacuna/measure"
 	"lacuna/report"
 	"lacuna/spectrum/frame"
@@ -21,6 +24,7 @@ func spectrumFlags() []cli.Flag {
 		&cli.StringFlag{Name: "frame", Usage: "wavelengths are in velocity frame `NAME`, where the file does not say: topocentric, geocentric, heliocentric, barycentric, LSRK, LSRD or source"},
 		&cli.StringFlag{Name: "correction", Usage: "add velocity `KM/S` to reach the frame of the results, in place of the header's"},
 		&cli.StringFlag{Name: "unit", Usage: "wavelengths are in `Angstrom|nm|um`, where the file does not say"},
+		&cli.StringFlag{Name: "layout", Usage: "wavelength axis of an image is `linear|log10|ln`, where the header is wrong; orders: a table lists orders one after another"},
 		&cli.StringFlag{Name: "columns", Usage: "read columns `WAVE,FLUX[,ERR]`, by name or number from 1"},
 		&cli.IntFlag{Name: "hdu", Value: -1, Usage: "read FITS unit `N`, 0 being the primary one", DefaultText: "found"},
 		&cli.StringFlag{Name: "resolving-power", Usage: "take `R` as λ/FWHM of the instrument, in place of the header's"},
@@ -32,7 +36,7 @@ func spectrumFlags() []cli.Flag {
 
 // spectrumOf reads those flags.
 func spectrumOf(c *cli.Context, path string) (config.Spectrum, error) {
-	sp := config.Spectrum{File: path, Unit: c.String("unit"), ContinuumColumn: c.String("continuum-column")}
+	sp := config.Spectrum{File: path, Unit: c.String("unit"), Layout: c.String("layout"), ContinuumColumn: c.String("continuum-column")}
 	var err error
 	if w := c.String("medium"); w != "" {
 		if sp.Medium, err = frame.ParseMedium(w); err != nil {
@@ -84,6 +88,23 @@ func spectrumOf(c *cli.Context, path string) (config.Spectrum, error) {
 	return sp, nil
 }
 
+// inOptions gives the advice of an error on a spectrum, which is written for
+// survey files, in options of the command line.
+func inOptions(err error) error {
+	if m, ok := err.(*oops.Mistake); ok {
+		return oops.Input(m.File, m.Where, m.What, asOptions.Replace(m.Fix))
+	}
+	return err
+}
+
+var asOptions = strings.NewReplacer(
+	`medium = "air" or "vacuum"`, "--medium air or --medium vacuum", `medium = "vacuum"`, "--medium vacuum",
+	`frame = "topocentric", "heliocentric" or "barycentric"`, "--frame topocentric, heliocentric or barycentric",
+	"correction = km/s", "--correction KM/S,", "unit and medium by hand: unit, medium", "unit and medium by hand: --unit, --medium",
+	`unit = "Angstrom", "nm", "um", …`, "--unit Angstrom, nm or um", `layout = "linear"`, "--layout linear", `layout = "log10", or unit`, "--layout log10, or --unit",
+	"give ra and dec", "give ra and dec in a survey file",
+)
+
 func measureCommand() *cli.Command {
 	return &cli.Command{
 		Name: "measure", Usage: "one line in one spectrum: width, column or limit",
@@ -98,54 +119,90 @@ Example: lacuna measure lantern1_red.fits --line "Na I 5889.95" --window -40,40`
 			&cli.StringSliceFlag{Name: "line", Usage: "measure transition `NAME`; may be repeated"},
 			&cli.StringFlag{Name: "window", Usage: "integrate over `LO,HI` km/s"},
 			&cli.BoolFlag{Name: "auto-window", Usage: "--window is the range to search; the one used is found"},
-			&cli.StringSliceFlag{Name: "continuum", Usage: "fit the continuum on `LO,HI` km/s; may be repeated", DefaultText: "found"},
-			&cli.IntFlag{Name: "degree", Value: -1, Usage: "fit a continuum of degree `N`", DefaultText: "by information criterion"},
-			&cli.IntFlag{Name: "order", Usage: "measure in order `N` alone", DefaultText: "every order that holds it"},
-			&cli.StringFlag{Name: "to", Value: "heliocentric", Usage: "give velocities in frame `NAME`: heliocentric, barycentric or LSRK"},
-			&cli.StringFlag{Name: "zero-level", Usage: "zero level and its error, `LEVEL,ERR`, over the continuum", DefaultText: "measured on black cores, else 0,0.01"},
 			&cli.StringFlag{Name: "b", Usage: "assume Doppler parameter `KM/S` for a limit", DefaultText: "2 for atoms, 1 for molecules"},
-			&cli.StringFlag{Name: "f-set", Value: "default", Usage: "use `NAME` as set of oscillator strengths"},
-			&cli.StringFlag{Name: "line-table", Usage: "add transitions of your own from `FILE`, CSV"},
-			&cli.StringFlag{Name: "figure", Usage: "write a figure into `FILE`, ending in .svg or .png"},
-			&cli.BoolFlag{Name: "json", Usage: "print the result as JSON"},
-		}, spectrumFlags()...),
+		}, slices.Concat(lineFlags(), outputFlags(), spectrumFlags())...),
 		Action: measureAction,
 	}
 }
 
-func measureAction(c *cli.Context) error {
-	path, err := one(c, "spectrum file")
-	if err != nil {
-		return err
+// An asked is one spectrum with the lines that the command line asks for.
+type asked struct {
+	path   string
+	sp     config.Spectrum
+	to     frame.Kind
+	table  *atomic.Table
+	lights []survey.Light
+	info   survey.SpectrumInfo
+	tasks  []survey.LineTask
+}
+
+// record is the result of one spectrum, to be filled.
+func (a asked) record(c *cli.Context) survey.Record {
+	rec := survey.Record{Schema: survey.Schema, Name: a.info.Object, Status: "done", Result: survey.Result{
+		FSet: c.String("f-set"), Frame: a.to, Spectra: []survey.SpectrumInfo{a.info},
+	}}
+	if rec.Name == "" {
+		rec.Name = a.path
+	}
+	return rec
+}
+
+// lineFlags choose lines and how their continua are placed.
+func lineFlags() []cli.Flag {
+	return []cli.Flag{
+		&cli.StringSliceFlag{Name: "continuum", Usage: "fit the continuum on `LO,HI` km/s; may be repeated", DefaultText: "found"},
+		&cli.IntFlag{Name: "degree", Value: -1, Usage: "fit a continuum of degree `N`", DefaultText: "by information criterion"},
+		&cli.IntFlag{Name: "order", Usage: "measure in order `N` alone", DefaultText: "every order that holds it"},
+		&cli.StringFlag{Name: "to", Value: "heliocentric", Usage: "give velocities in frame `NAME`: heliocentric, barycentric or LSRK"},
+		&cli.StringFlag{Name: "zero-level", Usage: "zero level and its error, `LEVEL,ERR`, over the continuum", DefaultText: "measured on black cores, else 0,0.01"},
+	}
+}
+
+// outputFlags choose data tables and where the result goes.
+func outputFlags() []cli.Flag {
+	return []cli.Flag{
+		&cli.StringFlag{Name: "f-set", Value: "default", Usage: "use `NAME` as set of oscillator strengths"},
+		&cli.StringFlag{Name: "line-table", Usage: "add transitions of your own from `FILE`, CSV"},
+		&cli.StringFlag{Name: "figure", Usage: "write a figure into `FILE`, ending in .svg or .png"},
+		&cli.BoolFlag{Name: "json", Usage: "print the result as JSON"},
+	}
+}
+
+// ask reads the options of lines and opens the spectrum.
+func ask(c *cli.Context) (asked, error) {
+	var a asked
+	var err error
+	if a.path, err = one(c, "spectrum file"); err != nil {
+		return a, err
 	}
 	names := c.StringSlice("line")
 	if len(names) == 0 {
-		return usage(c, `no line given: --line "Na I 5889.95" (lacuna lines lists them)`)
+		return a, usage(c, `no line given: --line "Na I 5889.95" (lacuna lines lists them)`)
 	}
 	if !c.IsSet("window") {
-		return usage(c, "no window given: --window -40,40 in km/s")
+		return a, usage(c, "no window given: --window -40,40 in km/s")
 	}
 	task := survey.LineTask{AutoWindow: c.Bool("auto-window"), Degree: c.Int("degree")}
 	if task.Window, err = pair(c, "window", c.String("window")); err != nil {
-		return err
+		return a, err
 	}
 	task.Velocity = task.Window
 	for _, text := range c.StringSlice("continuum") {
 		r, err := pair(c, "continuum", text)
 		if err != nil {
-			return err
+			return a, err
 		}
 		if !task.AutoWindow && r[0] < task.Window[1] && r[1] > task.Window[0] {
-			return usage(c, "--continuum %s reaches into the window %s", text, c.String("window"))
+			return a, usage(c, "--continuum %s reaches into the window %s", text, c.String("window"))
 		}
 		task.Continuum = append(task.Continuum, r)
 	}
 	if task.Degree < -1 || task.Degree > 5 {
-		return usage(c, "--degree %d is not -1 (by information criterion) to 5", task.Degree)
+		return a, usage(c, "--degree %d is not -1 (by information criterion) to 5", task.Degree)
 	}
 	if c.IsSet("b") {
 		if task.B, err = positive(c, "b"); err != nil {
-			return err
+			return a, err
 		}
 	}
 	if c.IsSet("order") {
@@ -155,44 +212,41 @@ func measureAction(c *cli.Context) error {
 	zero := measure.Zero{Err: 0.01, By: "prior"}
 	if c.IsSet("zero-level") {
 		if zero, err = zeroFlag(c); err != nil {
-			return err
+			return a, err
 		}
 	}
 	task.Zero = func(string) measure.Zero { return zero }
-	sp, err := spectrumOf(c, path)
-	if err != nil {
-		return err
+	if a.sp, err = spectrumOf(c, a.path); err != nil {
+		return a, err
 	}
-	task.ContErr = func(string) float64 { return sp.ContinuumErr }
-	table, err := survey.Tables(c.String("f-set"), c.String("line-table"))
-	if err != nil {
-		return err
+	task.ContErr = func(string) float64 { return a.sp.ContinuumErr }
+	if a.table, err = survey.Tables(c.String("f-set"), c.String("line-table")); err != nil {
+		return a, err
 	}
-	to, err := frame.ParseKind(c.String("to"))
-	if err != nil {
-		return usage(c, "--to: %v", err)
+	if a.to, err = frame.ParseKind(c.String("to")); err != nil {
+		return a, usage(c, "--to: %v", err)
 	}
-	lights, info, err := survey.Open(path, sp, nil, to, frame.Ciddor1996)
-	if err != nil {
-		return err
+	if a.lights, a.info, err = survey.Open(a.path, a.sp, nil, a.to, frame.Ciddor1996); err != nil {
+		return a, err
 	}
-	var tasks []survey.LineTask
 	for _, name := range names {
 		t := task
-		if t.Line, err = table.Find(name); err != nil {
-			return err
+		if t.Line, err = a.table.Find(name); err != nil {
+			return a, err
 		}
-		tasks = append(tasks, t)
+		a.tasks = append(a.tasks, t)
 	}
-	widths, _, err := survey.MeasureLines(lights, tasks, table)
+	return a, nil
+}
+
+func measureAction(c *cli.Context) error {
+	a, err := ask(c)
 	if err != nil {
-		return fmt.Errorf("%s: %w", path, err)
+		return err
 	}
-	rec := survey.Record{Schema: survey.Schema, Name: info.Object, Status: "done", Result: survey.Result{
-		FSet: c.String("f-set"), Frame: to, Spectra: []survey.SpectrumInfo{info}, Widths: widths,
-	}}
-	if rec.Name == "" {
-		rec.Name = path
+	rec := a.record(c)
+	if rec.Result.Widths, _, err = survey.MeasureLines(a.lights, a.tasks, a.table); err != nil {
+		return fmt.Errorf("%s: %w", a.path, err)
 	}
 	if f := c.String("figure"); f != "" {
 		if err := report.WriteLineFigure(f, rec); err != nil {
@@ -202,11 +256,11 @@ func measureAction(c *cli.Context) error {
 	if c.Bool("json") {
 		return report.JSON(c.App.Writer, rec)
 	}
-	for i, w := range widths {
+	for i, w := range rec.Result.Widths {
 		if i > 0 {
 			fmt.Fprintln(c.App.Writer)
 		}
-		if err := report.WidthText(c.App.Writer, w, to, textOptions(c)); err != nil {
+		if err := report.WidthText(c.App.Writer, w, a.to, textOptions(c)); err != nil {
 			return err
 		}
 	}
