@@ -24,7 +24,7 @@ their number be found (--auto). Lines of the air in the windows are masked. The 
 other methods stand beside the fitted ones. No survey file is needed; [[sightline.fit]] in
 one does the same for many stars, and takes bounds, priors and ties.
 
-Example: lacuna fit lantern1_red.fits --line "Na I 5889.95" --line "Na I 5895.92" --window -40,20 --clouds -14,-6.5 --keep-telluric`,
+Example: lacuna fit lantern1_blue.fits --line "Ca II K" --window -40,20 --clouds -14,-6.5`,
 		Flags: slices.Concat([]cli.Flag{
 			&cli.StringSliceFlag{Name: "line", Usage: "fit transition `NAME`; repeat it for all that are fitted together"},
 			&cli.StringFlag{Name: "window", Usage: "the lines absorb within `LO,HI` km/s"},
