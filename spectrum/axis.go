@@ -139,7 +139,7 @@ func (r *reader) axisUnit(h *fits.HDU, c cards, ctype string, first, last float6
 		conv, err := velocityAxis(h, c, code, cunit)
 		return waveUnit{wavelength, 1}, conv, err
 	default:
-		return waveUnit{}, nil, h.Fail(fmt.Sprintf("CTYPE1='%s', CUNIT1='%s': not a spectral axis that is known (%s)", ctype, cunit, known), "give unit and medium by hand: wave_unit, medium")
+		return waveUnit{}, nil, h.Fail(fmt.Sprintf("CTYPE1='%s', CUNIT1='%s': not a spectral axis that is known (%s)", ctype, cunit, known), "give unit and medium by hand: unit, medium")
 	}
 	if algorithm != "" && algorithm != "LOG" && sameText(code, "WAVE", "AWAV", "FREQ", "ENER", "WAVN") {
 		return waveUnit{}, nil, h.Fail(fmt.Sprintf("CTYPE1='%s': algorithm %s is not read yet", ctype, algorithm), "save the spectrum on a linear axis or as a table")
@@ -153,7 +153,7 @@ func (r *reader) axisUnit(h *fits.HDU, c cards, ctype string, first, last float6
 			return u, nil, nil
 		}
 		if name == cunit || name == r.o.WaveUnit {
-			return waveUnit{}, nil, h.Fail(fmt.Sprintf("CTYPE1='%s', CUNIT1='%s': '%s' is not a unit of wavelength", ctype, cunit, name), `give it: wave_unit = "Angstrom", "nm", "um", …`)
+			return waveUnit{}, nil, h.Fail(fmt.Sprintf("CTYPE1='%s', CUNIT1='%s': '%s' is not a unit of wavelength", ctype, cunit, name), `give it: unit = "Angstrom", "nm", "um", …`)
 		}
 	}
 	switch code { // the units of the standard where CUNIT1 is absent
@@ -176,7 +176,7 @@ func (r *reader) axisUnit(h *fits.HDU, c cards, ctype string, first, last float6
 		w.notes = append(w.notes, "the axis has no unit: taken for "+name+" by its size")
 		return u, nil, nil
 	}
-	return waveUnit{}, nil, h.Fail(fmt.Sprintf("wavelengths from %g to %g have no unit (no CUNIT1)", first, last), `give it: wave_unit = "Angstrom", "nm", "um", …`)
+	return waveUnit{}, nil, h.Fail(fmt.Sprintf("wavelengths from %g to %g have no unit (no CUNIT1)", first, last), `give it: unit = "Angstrom", "nm", "um", …`)
 }
 
 // columnNameUpper takes "WAVELENGTH [ANG]" apart.

@@ -38,14 +38,14 @@ func (s *Segment) ToVacuum(f frame.Formula) error {
 // that is not known is an error, never a guess.
 func (s *Segment) ToFrame(to frame.Kind) error {
 	if s.Frame == frame.Unknown {
-		return s.fail("the velocity frame of the wavelengths is not known", `say frame = "TOPOCENT", "HELIOCEN" or "BARYCENT"`)
+		return s.fail("the velocity frame of the wavelengths is not known", `say frame = "topocentric", "heliocentric" or "barycentric"`)
 	}
 	if s.Frame == to {
 		return nil
 	}
 	switch {
 	case to == frame.Unknown:
-		return s.fail("no velocity frame is given to go to", `say frame = "HELIOCEN"`)
+		return s.fail("no velocity frame is given to go to", `say frame = "heliocentric"`)
 	case solar(s.Frame) && solar(to):
 		s.note("%s wavelengths taken for %s: the Sun moves by 16 m/s at most", s.Frame, to)
 		s.Frame = to

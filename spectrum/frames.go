@@ -289,6 +289,31 @@ func (r *reader) corrections(s *Segment, c cards, k clue) {
 			add("correction in the header", to, x)
 		}
 	}
+	s.doubtful()
+}
+
+const (
+	earthSpeed = 31.0 // km/s: the Earth's orbit (30.3 at most) and its rotation (0.5)
+	sunSpeed   = 0.03 // km/s: twice what the Sun moves about the barycentre, for rounding
+)
+
+// doubtful says where a correction cannot be right: it is more than the Earth
+// moves, or two of the same motion differ by more than the Sun moves.
+func (s *Segment) doubtful() {
+	first := -1
+	for i, a := range s.Shift {
+		if !solar(a.To) || a.Keyword == byUserWord {
+			continue
+		}
+		if math.Abs(a.V) > earthSpeed {
+			s.note("%s = %+.3f km/s is more than the Earth moves: the number is wrong", a.Keyword, a.V)
+		}
+		if first < 0 {
+			first = i
+		} else if b := s.Shift[first]; math.Abs(a.V-b.V) > sunSpeed {
+			s.note("%s = %+.3f and %s = %+.3f km/s differ by more than the Sun moves: one of them is wrong", b.Keyword, b.V, a.Keyword, a.V)
+		}
+	}
 }
 
 // kms reads a velocity; numbers beyond 100 are taken for m/s with a note, for

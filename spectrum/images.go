@@ -93,7 +93,7 @@ func (r *reader) image(h *fits.HDU) error {
 		for i := range wave {
 			wave[i] = w.at(float64(i + 1))
 			if !finite(wave[i]) || wave[i] <= 0 {
-				return nil, h.Fail(fmt.Sprintf("the spectral axis gives wavelength %g at pixel %d", wave[i], i+1), "correct CRVAL1 and CDELT1, or give layout and wave_unit")
+				return nil, h.Fail(fmt.Sprintf("the spectral axis gives wavelength %g at pixel %d", wave[i], i+1), "correct CRVAL1 and CDELT1, or give layout and unit")
 			}
 		}
 		return wave, nil
@@ -221,7 +221,7 @@ func (r *reader) lines(h *fits.HDU, c cards, n int64) ([]aline, error) {
 		}
 		return []aline{l}, r.looksLikeError(h)
 	}
-	return nil, h.Fail(fmt.Sprintf("the image has %d lines and nothing says what they are", n), "say which: flux_col and err_col, line numbers from 1")
+	return nil, h.Fail(fmt.Sprintf("the image has %d lines and nothing says what they are", n), "say which: columns = {flux = …, err = …}, line numbers from 1")
 }
 
 func (r *reader) userLines(h *fits.HDU, n int64) ([]aline, error) {
@@ -282,7 +282,7 @@ func (r *reader) looksLikeError(h *fits.HDU) error {
 	}
 	if ma, mb := median(a), median(b); ma > 0 && mb > 0.5*ma {
 		return h.Fail(fmt.Sprintf("the image has two lines of medians %.3g and %.3g: the second may be an error or another spectrum", ma, mb),
-			`say which: flux_col = "1" and err_col = "2" or "none"`)
+			`say which: columns = {flux = 1, err = 2}, or err = "none"`)
 	}
 	return nil
 }

@@ -52,7 +52,7 @@ func (r *reader) iue(h *fits.HDU) error {
 		return err
 	}
 	if p.flux < 0 {
-		return h.Fail("no column ABS_CAL, FLUX or NET", "name the flux: flux_col")
+		return h.Fail("no column ABS_CAL, FLUX or NET", "name the flux: columns = {flux = …}")
 	}
 	for row := range h.Rows {
 		if r.o.Row > 0 && int64(r.o.Row) != row+1 {

@@ -22,7 +22,7 @@ func (r *reader) finish(s Segment, px pixels) error {
 	lo, hi := s.Wave[0], s.Wave[len(s.Wave)-1]
 	if hi < shortest {
 		return s.fail(fmt.Sprintf("wavelengths from %.4g to %.4g Å are no light of a star: the scale is misread", lo, hi),
-			`is the axis logarithmic, or in another unit? Say layout = "log10", or wave_unit`)
+			`is the axis logarithmic, or in another unit? Say layout = "log10", or unit`)
 	}
 	if lo < usualLow || hi > usualTop {
 		s.note("wavelengths from %.5g to %.5g Å: neither ultraviolet nor optical; check the unit", lo, hi)

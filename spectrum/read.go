@@ -94,6 +94,23 @@ func read(c *fits.Content, o Options) (*Spectrum, error) {
 	return r.s, nil
 }
 
+// decisive are keywords on which columns, wavelengths and velocities rest, without
+// the numbers at their ends.
+var decisive = []string{"BITPIX", "NAXIS", "TFIELDS", "TTYPE", "TFORM", "TUNIT", "TSCAL", "TZERO", "TNULL", "TUCD", "TUTYP", "CRVAL", "CDELT", "CRPIX", "CTYPE", "CUNIT", "CD1_", "PC1_", "DC-FLAG", "BSCALE", "BZERO", "BLANK",
+	"SPECSYS", "AIRORVAC", "HELCORR", "VHELIO", "V_HELIO", "HELIO_RV", "BARYCORR", "COEFF", "WV_0_", "WV_4_", "LTV", "LTM1_", "ESO QC VRAD HELICOR", "ESO QC VRAD BARYCOR", "ESO QC BERV"}
+
+// doubled says which of them a header gives twice with different values: the
+// first one counts, and one of the cards may be damaged.
+func (r *reader) doubled() {
+	for _, h := range r.file.HDUs {
+		for _, key := range h.Doubled {
+			if root := strings.TrimRight(key, "0123456789"); slices.Contains(decisive, root) || slices.Contains(decisive, key) || strings.HasSuffix(key, " DRS BERV") || strings.Contains(key, " DRS CAL TH COEFF LL") {
+				r.s.Notes = append(r.s.Notes, fmt.Sprintf("%s: %s stands there twice with different values: the first is taken", h.Where(), key))
+			}
+		}
+	}
+}
+
 // maxCheckSums is the largest file whose FITS checksums are looked at, in bytes.
 const maxCheckSums = 64 << 20
 
@@ -165,6 +182,7 @@ func (r *reader) fits() error {
 	}
 	r.file = f
 	r.s.Notes = append(r.s.Notes, f.Notes...)
+	r.doubled()
 	hdus := f.HDUs
 	if r.o.HDU != "" {
 		h, err := r.chosen()
@@ -219,7 +237,7 @@ func (r *reader) nothing(hdus []*fits.HDU) error {
 		}
 	}
 	return oops.Input(r.c.Name, "", "no spectrum is recognised in it: "+strings.Join(list, "; "),
-		"name HDU and columns: hdu, wave_col, flux_col")
+		"name HDU and columns: hdu, columns = {wave = …, flux = …}")
 }
 
 // headers are those that belong to an HDU.

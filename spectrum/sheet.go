@@ -65,7 +65,7 @@ func (r *reader) fromSheet(sh *sheet) error {
 		return err
 	}
 	if p.wave < 0 || p.flux < 0 {
-		return where("no column of wavelength and flux is recognised; its columns: "+strings.Join(names, ", "), "name them: wave_col, flux_col")
+		return where("no column of wavelength and flux is recognised; its columns: "+strings.Join(names, ", "), "name them: columns = {wave = …, flux = …}")
 	}
 	if sh.byPlace {
 		r.s.Notes = append(r.s.Notes, "column names from a comment: "+strings.Join(names, ", "))

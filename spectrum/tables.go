@@ -122,7 +122,7 @@ func (r *reader) vectors(h *fits.HDU) error {
 // cells reads one segment a row.
 func (r *reader) cells(h *fits.HDU, p picked) error {
 	if p.wave < 0 || p.flux < 0 {
-		return h.Fail("no column of wavelength and flux is recognised; its columns: "+strings.Join(columnNames(h), ", "), "name them: wave_col, flux_col")
+		return h.Fail("no column of wavelength and flux is recognised; its columns: "+strings.Join(columnNames(h), ", "), "name them: columns = {wave = …, flux = …}")
 	}
 	r.describe(r.headers(h))
 	for row := int64(0); row < h.Rows; row++ {
@@ -230,7 +230,7 @@ func (r *reader) rows(h *fits.HDU) error {
 		return err
 	}
 	if p.wave < 0 || p.flux < 0 {
-		return h.Fail("no column of wavelength and flux is recognised; its columns: "+strings.Join(columnNames(h), ", "), "name them: wave_col, flux_col")
+		return h.Fail("no column of wavelength and flux is recognised; its columns: "+strings.Join(columnNames(h), ", "), "name them: columns = {wave = …, flux = …}")
 	}
 	c := r.headers(h)
 	r.describe(c)

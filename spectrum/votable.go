@@ -72,7 +72,7 @@ func (r *reader) votable() error {
 	if len(v.tables) == 0 {
 		return r.fail(0, "fetch the file again", "a VOTable without a table")
 	}
-	return r.fail(0, "name the table by its number from 0 (hdu) and its columns (wave_col, flux_col)", "no table with a wavelength and a flux column is recognised: %s", strings.Join(names, "; "))
+	return r.fail(0, "name the table by its number from 0 (hdu) and its columns = {wave = …, flux = …}", "no table with a wavelength and a flux column is recognised: %s", strings.Join(names, "; "))
 }
 
 // votFITS reads a spectrum that stands as FITS inside a VOTable.
@@ -179,7 +179,7 @@ func (r *reader) votSpectrum(t *votTable, p picked) error {
 	}
 	wave := t.fields[p.wave].values
 	if len(wave) != t.rows {
-		return r.fail(0, "name another: wave_col", "column %s does not hold numbers", names[p.wave])
+		return r.fail(0, "name another: columns = {wave = …}", "column %s does not hold numbers", names[p.wave])
 	}
 	parts := runs(t.rows, order, nil, wave, r.o.Layout == byOrders)
 	for k, part := range parts {

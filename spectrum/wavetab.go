@@ -81,7 +81,7 @@ func (r *reader) tabAxis(h *fits.HDU, c cards, w law, psi func(p float64) float6
 	}
 	u, ok := parseWaveUnit(name)
 	if !ok {
-		return w, h.Fail(fmt.Sprintf("CTYPE1='%s', CUNIT1='%s': '%s' is not a unit of wavelength", w.ctype, c.str("CUNIT1"), name), `give it: wave_unit = "Angstrom", "nm", "um", …`)
+		return w, h.Fail(fmt.Sprintf("CTYPE1='%s', CUNIT1='%s': '%s' is not a unit of wavelength", w.ctype, c.str("CUNIT1"), name), `give it: unit = "Angstrom", "nm", "um", …`)
 	}
 	w.kind = "lookup-table"
 	table := curve{kind: sampled, x: index, c: wave}

@@ -39,7 +39,7 @@ func (r *reader) x1d(h *fits.HDU) error {
 		return err
 	}
 	if p.flux < 0 {
-		return h.Fail("no FLUX column", "name it: flux_col")
+		return h.Fail("no FLUX column", "name it: columns = {flux = …}")
 	}
 	c := r.headers(h)
 	r.describe(c)

@@ -24,6 +24,9 @@ type Card struct {
 type Header struct {
 	Cards []Card
 
+	// Doubled are keys that stand there again with another value, which is ignored.
+	Doubled []string
+
 	file, where string
 	first       map[string]int
 }
@@ -115,8 +118,10 @@ func (h *Header) add(raw string) {
 		return
 	}
 	c.parse(text)
-	if _, dup := h.first[c.Key]; c.value && !dup {
+	if i, dup := h.first[c.Key]; c.value && !dup {
 		h.first[c.Key] = len(h.Cards)
+	} else if c.value && h.Cards[i].Value != c.Value && len(h.Doubled) < 100 {
+		h.Doubled = append(h.Doubled, c.Key)
 	}
 	h.Cards = append(h.Cards, c)
 }
