@@ -65,6 +65,7 @@ var schema = []KeyDoc{
 	{Table: "sightline.spectrum", Name: "orders", Type: Integers, Range: "[-9999, 9999]", Meaning: "The only orders to use. All where not given."},
 	{Table: "sightline.spectrum", Name: "columns", Type: Table, Meaning: "Names (or numbers, from 1) of the columns to read, where the file does not make them clear."},
 	{Table: "sightline.spectrum", Name: "unit", Type: Text, Words: []string{"Angstrom", "nm", "um", "m", "1/cm", "log10(Angstrom)"}, Meaning: "Unit of the wavelengths, where the file does not say."},
+	{Table: "sightline.spectrum", Name: "layout", Type: Text, Words: []string{"linear", "log10", "ln", "orders"}, Meaning: "Law of the wavelength axis of an image, where the header is wrong or silent; \"orders\": a table lists orders one after another."},
 	{Table: "sightline.spectrum", Name: "mask", Type: Pairs, Unit: "Å", Range: "(0, 1e8)", Meaning: "Wavelengths not to use: Å in the file's own medium and frame, as a plot of the file shows them."},
 	{Table: "sightline.spectrum", Name: "note", Type: Text, Meaning: "Free text, kept with the configuration in the manifest."},
 

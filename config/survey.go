@@ -90,6 +90,7 @@ type Spectrum struct {
 	Orders          []int        `json:"orders,omitempty" toml:"orders"`         // nil: all
 	Columns         Names        `json:"columns" toml:"columns"`
 	Unit            string       `json:"unit,omitempty" toml:"unit"`
+	Layout          string       `json:"layout,omitempty" toml:"layout"`
 	Mask            [][2]float64 `json:"mask,omitempty" toml:"mask"` // Å, the file's medium and frame
 	Note            string       `json:"note,omitempty" toml:"note"`
 

@@ -123,7 +123,7 @@ func coord(s config.Sightline) *spectrum.Coord {
 func readOptions(sp config.Spectrum, at *spectrum.Coord, to frame.Kind) spectrum.Options {
 	o := spectrum.Options{
 		Row: sp.Row, WaveCol: sp.Columns.Wave, FluxCol: sp.Columns.Flux, ErrCol: sp.Columns.Err,
-		ContinuumCol: sp.ContinuumColumn, WaveUnit: sp.Unit, Medium: sp.Medium, Frame: sp.Frame,
+		ContinuumCol: sp.ContinuumColumn, WaveUnit: sp.Unit, Layout: sp.Layout, Medium: sp.Medium, Frame: sp.Frame,
 		Correction: sp.Correction, CorrectionTo: to, Resolution: sp.R,
 		Normalised: sp.Normalised != nil && *sp.Normalised, Coord: at,
 	}

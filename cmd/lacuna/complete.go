@@ -94,6 +94,8 @@ func values(option string) []string {
 		return []string{"topocentric", "geocentric", "heliocentric", "barycentric", "LSRK", "LSRD", "source"}
 	case "to":
 		return []string{"heliocentric", "barycentric", "LSRK"}
+	case "layout":
+		return []string{"linear", "log10", "ln", "orders"}
 	case "unit":
 		return []string{"Angstrom", "nm", "um"}
 	case "f-set":

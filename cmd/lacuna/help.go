@@ -36,7 +36,7 @@ func helpCommand() *cli.Command {
 func helpText(cmd *cli.Command) string {
 	var b strings.Builder
 	fmt.Fprintf(&b, "lacuna %s: %s\n\nUsage: lacuna %s\n\n%s\n\nOptions:\n", cmd.Name, cmd.Usage,
-		strings.TrimSpace(cmd.Name+" "+cmd.ArgsUsage), cmd.Description)
+		strings.TrimSpace(cmd.Name+" "+cmd.ArgsUsage), description(cmd))
 	var rows [][2]string
 	wide := 0
 	for _, f := range cmd.Flags {
@@ -59,6 +59,18 @@ func helpText(cmd *cli.Command) string {
 		}
 	}
 	return b.String()
+}
+
+// description is that of the command, an example that is too long broken as a shell
+// takes it.
+func description(cmd *cli.Command) string {
+	lines := strings.Split(cmd.Description, "\n")
+	for i, l := range lines {
+		if strings.HasPrefix(l, "Example: ") && utf8.RuneCountInString(l) > helpWidth {
+			lines[i] = strings.Join(fold(l, helpWidth-6), " \\\n    ")
+		}
+	}
+	return strings.Join(lines, "\n")
 }
 
 // optionText is an option with its value, and what it does.

@@ -44,7 +44,7 @@ func TestHelpOfEveryCommand(t *testing.T) {
 			t.Errorf("%s: no example in its help", name)
 			continue
 		}
-		example, _, _ = strings.Cut(example, "\n")
+		example, _, _ = strings.Cut(strings.ReplaceAll(example, " \\\n", " "), "\n")
 		for _, o := range option.FindAllString(example, -1) {
 			if !regexp.MustCompile(`(?m)^  (-h, )?` + o + `\b`).MatchString(options) {
 				t.Errorf("%s: its example uses %s, which is not among its options", name, o)

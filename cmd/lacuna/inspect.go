@@ -46,7 +46,7 @@ func inspectAction(c *cli.Context) error {
 		}
 		s, audits, err := survey.Inspect(path, sp)
 		if err != nil { // the other files may still be looked at
-			failed = append(failed, err)
+			failed = append(failed, inOptions(err))
 			continue
 		}
 		in := inspected{file: path, spectrum: s}

@@ -227,7 +227,7 @@ func ask(c *cli.Context) (asked, error) {
 		return a, usage(c, "--to: %v", err)
 	}
 	if a.lights, a.info, err = survey.Open(a.path, a.sp, nil, a.to, frame.Ciddor1996); err != nil {
-		return a, inOptions(inOptions(err))
+		return a, inOptions(err)
 	}
 	for _, name := range names {
 		t := task

@@ -222,14 +222,14 @@ func TestMeasureFaultySpectra(t *testing.T) {
 	mistake(t, 2, []string{dir, "not a file"}, args(dir)...)
 
 	text := sheet("good.txt", "# wave flux err\n", good)
-	mistake(t, 2, []string{"good.txt", "medium", "air", "vacuum"}, args(text)...)
-	mistake(t, 2, []string{"good.txt", "frame"}, args(text, "--medium", "air")...)
+	mistake(t, 2, []string{"good.txt", "--medium air or --medium vacuum"}, args(text)...)
+	mistake(t, 2, []string{"good.txt", "--frame topocentric, heliocentric or barycentric"}, args(text, "--medium", "air")...)
 	w := measured(t, args(text, say...)[1:]...).Result.Widths[0]
 	// ∫ 0.5 exp(−(Δλ/0.05 Å)²) dλ = 0.5·0.05·√π = 44.3 mÅ.
 	if want := 0.5 * 0.05 * math.SqrtPi; !w.Detected || !(math.Abs(w.W.X-want) < 3*w.W.Err()) || !(w.W.Err() < 0.003) {
 		t.Errorf("W = %.4f ± %.4f Å, want %.4f", w.W.X, w.W.Err(), want)
 	}
-	mistake(t, 2, []string{"good.txt", "LSRK"}, args(text, "--medium", "air", "--frame", "heliocentric", "--to", "LSRK")...)
+	mistake(t, 2, []string{"good.txt", "LSRK", "ra and dec in a survey file"}, args(text, "--medium", "air", "--frame", "heliocentric", "--to", "LSRK")...)
 
 	none := measured(t, args(sheet("none.txt", "", func(i int, w float64) string {
 		return fmt.Sprintf("%.4f %.5f 0", w, flux(i, w))

@@ -19,7 +19,7 @@ import (
 func resultTables() map[string]*table.Table {
 	rs := []survey.Record{{Status: "done", Result: survey.Result{Frame: frame.Heliocent}}}
 	return map[string]*table.Table{
-		"widths": report.Widths(rs), "columns": report.Columns(rs), "growth": report.Growth(rs), "depletions": report.Depletions(rs),
+		"widths": report.Widths(rs), "columns": report.Columns(rs), "growth": report.Growth(rs), "clouds": report.Clouds(rs), "depletions": report.Depletions(rs),
 	}
 }
 
