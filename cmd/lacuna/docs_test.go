@@ -18,8 +18,8 @@ import (
 
 var update = flag.Bool("update", false, "rewrite the outputs shown in the manual")
 
-// The manual is run: every line "$ lacuna …" of a ```console block, in order, in
-// one folder for all pages. Output that a block shows is the output of the program,
+// The manual is run, and the README after it: every line "$ lacuna …" of a
+// ```console block, in order, in one folder for all pages. Output that a block shows is the output of the program,
 // character by character; a line "…" stands for lines that are left out. Other
 // forms in the pages:
 //
@@ -35,7 +35,7 @@ func TestManual(t *testing.T) {
 	demo(t)
 	t.Chdir(base)
 	ran := 0
-	for _, page := range pages(t, filepath.Join(root, "docs")) {
+	for _, page := range append(pages(t, filepath.Join(root, "docs")), filepath.Join(root, "README.md")) {
 		t.Run(filepath.Base(page), func(t *testing.T) { ran += runPage(t, base, page) })
 	}
 	if ran < 20 {
