@@ -71,6 +71,9 @@ func (t *Table) suggest(q string) string {
 			names = append(names, l.Species+" "+a)
 		}
 	}
+	if like := t.bare(q); len(like) > 0 && len(like) <= 8 {
+		return "did you mean " + strings.Join(like, " or ") + "? Begin with the species"
+	}
 	near := oops.Nearest(q, names, 4)
 	if len(near) == 0 {
 		near = oops.Nearest(strings.TrimRight(q, "0123456789. "), t.Species(), 3)
@@ -79,4 +82,24 @@ func (t *Table) suggest(q string) string {
 		return "the species are " + strings.Join(t.Species(), ", ")
 	}
 	return "the nearest names are " + strings.Join(near, ", ")
+}
+
+// bare lists the lines that a designation ("D2") or a wavelength without a species
+// may mean.
+func (t *Table) bare(q string) []string {
+	wave, err := parseNumber(q)
+	if err != nil {
+		wave = math.Inf(1)
+	}
+	var out []string
+	for i, l := range t.lines {
+		like := math.Abs(l.Wave-wave) < 1 || math.Abs(l.WaveAir-wave) < 1
+		for _, a := range l.Alias {
+			like = like || fold(greek.Replace(a)) == fold(q)
+		}
+		if like {
+			out = append(out, t.describe(i))
+		}
+	}
+	return out
 }

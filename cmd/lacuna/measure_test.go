@@ -156,6 +156,8 @@ func TestMeasureMistakes(t *testing.T) {
 		{[]string{"--line", "Na I 5889.95"}, []string{"no window given", "--window -40,40"}},
 		{[]string{"--line", "Na I 5888.95", "--window", "-4,4"}, []string{"Na I has no line at 5888.95", "Na I 5889.95 (D2)"}},
 		{[]string{"--line", "Na I", "--window", "-4,4"}, []string{`"Na I" does not say which line`, "Na I 3302.37"}},
+		{[]string{"--line", "D2", "--window", "-4,4"}, []string{`no line "D2"`, "did you mean", "Na I 5889.95 (D2)", "Begin with the species"}},
+		{[]string{"--line", "5889.95", "--window", "-4,4"}, []string{`no line "5889.95"`, "did you mean Na I 5889.95 (D2)?"}},
 		{[]string{"--line", "", "--window", "-4,4"}, []string{"no name of a line"}},
 		{[]string{"--line", "Na I D2", "--window", "4,-4"}, []string{`"4,-4"`, "lower first"}},
 		{[]string{"--line", "Na I D2", "--window", "4"}, []string{`"4"`, "comma"}},
