@@ -58,6 +58,7 @@ type Width struct {
 	Wave       float64       `json:"wave"`     // vacuum Å
 	WaveAir    float64       `json:"wave_air"` // 0 below 2000 Å
 	F          float64       `json:"f"`
+	FDefault   float64       `json:"f_default,omitempty"` // of the default set, where another one was chosen and differs
 	Order      int           `json:"order"`
 	File       string        `json:"file"`
 	Window     [2]float64    `json:"window"` // km/s, used

@@ -79,6 +79,12 @@ func (p *page) sightline(r survey.Record) {
 		p.blank()
 		p.depletion(res.Depletions, res.Hydrogen)
 	}
+	if len(res.Failures) > 0 {
+		p.blank()
+		for _, s := range res.Failures {
+			p.para("  ! ", "not measured: "+s, fail)
+		}
+	}
 	if len(res.Warnings) > 0 {
 		p.blank()
 		for _, s := range res.Warnings {

@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"math"
 	"slices"
 	"strings"
 
@@ -30,6 +31,8 @@ func Widths(rs []survey.Record) *table.Table {
 		real("lambda_vac_A", "Angstrom", "Rest wavelength in vacuum"),
 		real("lambda_air_A", "Angstrom", "Rest wavelength in air, above 2000 Å"),
 		real("f", "", "Oscillator strength"),
+		real("f_default", "", "Oscillator strength of the default set, where the survey chose another set and it differs"),
+		real("dlogN_default", dexes, "What the default set would add to every log N of this line: log(f/f_default)"),
 		word("f_source", "Source of f"),
 		word("f_status", "Status of f: verified, computed, memory or user"),
 		word("file", "Spectrum"),
@@ -119,9 +122,13 @@ func widthRow(r survey.Record, w measure.Width) []table.Cell {
 	case !w.Detected && w.Limit > 0:
 		kind, x, err = table.Str("upper"), limit, table.Missing
 	}
+	fDefault, dDefault := table.Missing, table.Missing
+	if w.FDefault > 0 {
+		fDefault, dDefault = table.Exact(w.FDefault), table.Fixed(math.Log10(w.F/w.FDefault), 4)
+	}
 	cells := []table.Cell{
 		table.Str(r.Name), table.Str(w.Line), table.Str(w.Species), table.StrOr(w.Level),
-		table.Fixed(w.Wave, 4), positive(w.WaveAir, 4), table.Exact(w.F), table.StrOr(row.Source), table.StrOr(row.Status),
+		table.Fixed(w.Wave, 4), positive(w.WaveAir, 4), table.Exact(w.F), fDefault, dDefault, table.StrOr(row.Source), table.StrOr(row.Status),
 		table.StrOr(w.File), table.Int(w.Order), table.StrOr(string(r.Result.Frame)),
 		table.Fixed(w.Window[0], 2), table.Fixed(w.Window[1], 2), table.Str(by),
 		kind, x, err, meas, measErr,

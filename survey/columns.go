@@ -30,6 +30,7 @@ func (c *chain) columns(res *Result, s config.Sightline) error {
 			}
 		}
 	}
+	res.Warnings = append(res.Warnings, apart(res.Widths)...)
 	for _, w := range res.Widths {
 		res.Columns = append(res.Columns, ofWidth(w)...)
 	}
@@ -97,6 +98,25 @@ func (c *chain) columns(res *Result, s config.Sightline) error {
 func Columns(res *Result, s config.Sightline, table *atomic.Table) error {
 	c := &chain{table: table}
 	return c.columns(res, s)
+}
+
+// apart says where one line comes out differently in two orders, by more than 2σ of
+// the difference; what both share cancels in it.
+func apart(ws []measure.Width) []string {
+	var out []string
+	for i, a := range ws {
+		for _, b := range ws[i+1:] {
+			if a.Line != b.Line {
+				continue
+			}
+			d := budget.Combine([]float64{1, -1}, a.W.Plain(), b.W.Plain())
+			if n := math.Abs(d.X) / d.Err(); n > 2 {
+				out = append(out, fmt.Sprintf("%s differs between %s order %d (%.1f ± %.1f mÅ) and %s order %d (%.1f ± %.1f mÅ) by %.1fσ",
+					a.Line, a.File, a.Order, 1e3*a.W.X, 1e3*a.W.Err(), b.File, b.Order, 1e3*b.W.X, 1e3*b.W.Err(), n))
+			}
+		}
+	}
+	return out
 }
 
 // ofWidth gives the columns of one line: weak-line relation and apparent optical

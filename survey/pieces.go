@@ -1,6 +1,7 @@
 package survey
 
 import (
+	"errors"
 	"fmt"
 	"math"
 
@@ -11,13 +12,13 @@ import (
 // Pieces are the neighbourhoods of lines, cut out of every segment that holds them,
 // with continua and zero levels: what widths and fits are made from.
 type Pieces struct {
-	lights  []Light
-	tasks   []LineTask
-	table   *atomic.Table
-	jobs    []job
-	failed  []error // the first error of each task
-	missing []string
-	widths  []measure.Width // once measured
+	lights []Light
+	tasks  []LineTask
+	table  *atomic.Table
+	jobs   []job
+	failed []error // the first error of each task
+	notes  []note
+	widths []measure.Width // once measured
 }
 
 // A job is one line in one segment.
@@ -28,19 +29,24 @@ type job struct {
 	core        bool         // the line has a black core, which gives the zero level
 }
 
-// note keeps the error of a line in an order that cannot be used.
-func (p *Pieces) note(j job, err error) {
+// A note is a sentence about a task.
+type note struct {
+	task int
+	text string
+}
+
+// leave keeps the error of a line in an order that cannot be used.
+func (p *Pieces) leave(j job, err error) {
 	if p.failed[j.task] == nil {
 		p.failed[j.task] = err
 	}
-	p.missing = append(p.missing, fmt.Sprintf("%s is left out: %v", p.lights[j.light].Seg.Label, err))
+	p.notes = append(p.notes, note{j.task, fmt.Sprintf("%s is left out: %v", p.lights[j.light].Seg.Label, err)})
 }
 
 // Cut cuts the pieces of all tasks. The zero level of a segment is measured on all
 // black cores among the lines asked for in it; it replaces a prior, never the user's
-// word. A line that no spectrum holds is an error, or for an optional one a sentence
-// in what Measure returns as missing.
-func Cut(lights []Light, tasks []LineTask, table *atomic.Table) (*Pieces, error) {
+// word.
+func Cut(lights []Light, tasks []LineTask, table *atomic.Table) *Pieces {
 	p := &Pieces{lights: lights, tasks: tasks, table: table, failed: make([]error, len(tasks))}
 	for n, t := range tasks {
 		found := false
@@ -52,22 +58,22 @@ func Cut(lights []Light, tasks []LineTask, table *atomic.Table) (*Pieces, error)
 			j := job{task: n, light: k}
 			var err error
 			if j.piece, err = l.piece(t, table); err != nil {
-				p.note(j, err)
+				p.leave(j, err)
 				continue
 			}
 			j.prior = j.piece.Zero
 			p.jobs = append(p.jobs, j)
 		}
 		if !found {
-			err := notCovered(lights, t)
-			if !t.Optional {
-				return nil, err
+			if t.Optional {
+				p.notes = append(p.notes, note{n, fmt.Sprintf("%s is not measured: no spectrum holds its window", t.Line.Name)})
+				continue
 			}
-			p.missing = append(p.missing, fmt.Sprintf("%s is not measured: no spectrum holds its window", t.Line.Name))
+			p.failed[n] = notCovered(lights, t)
 		}
 	}
 	p.zeros()
-	return p, nil
+	return p
 }
 
 // zeros measures zero levels on black cores.
@@ -99,36 +105,40 @@ func (p *Pieces) zeros() {
 	}
 }
 
-// Measure measures each line in every segment that holds its window. An order that
-// cannot be used where another one holds the line too is a sentence in missing. Fits
-// after it know what else absorbs in the windows.
+// Measure measures each line in every segment that holds its window. A line that
+// cannot be measured anywhere is an error; the errors of all such lines come back
+// joined, beside the widths of the others. An order that cannot be used where
+// another one holds the line too is a sentence in missing, and so is an optional
+// line that no spectrum holds. Fits after it know what else absorbs in the windows.
 func (p *Pieces) Measure() (widths []measure.Width, missing []string, err error) {
 	done := make([]int, len(p.tasks)) // widths of each task
 	for _, j := range p.jobs {
 		w, err := measure.Measure(j.piece)
 		if err != nil {
-			p.note(j, err)
+			p.leave(j, err)
 			continue
 		}
 		done[j.task]++
 		widths = append(widths, w)
 	}
+	for _, n := range p.notes {
+		if done[n.task] > 0 || p.failed[n.task] == nil {
+			missing = append(missing, n.text)
+		}
+	}
+	var errs []error
 	for n, err := range p.failed {
 		if err != nil && done[n] == 0 { // no other order can stand in
-			return nil, nil, err
+			errs = append(errs, err)
 		}
 	}
 	p.widths = widths
-	return widths, p.missing, nil
+	return widths, missing, errors.Join(errs...)
 }
 
 // MeasureLines cuts and measures.
 func MeasureLines(lights []Light, tasks []LineTask, table *atomic.Table) (widths []measure.Width, missing []string, err error) {
-	p, err := Cut(lights, tasks, table)
-	if err != nil {
-		return nil, nil, err
-	}
-	return p.Measure()
+	return Cut(lights, tasks, table).Measure()
 }
 
 // zeroReach is how far, relative to its wavelength, a zero level holds: about one

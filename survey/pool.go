@@ -48,12 +48,21 @@ feed:
 func together(errs []error) error {
 	var failed []error
 	for _, e := range errs {
-		if e != nil {
-			failed = append(failed, e)
-		}
+		failed = append(failed, split(e)...)
 	}
 	if failed == nil {
 		return nil
 	}
 	return &Failed{Of: len(errs), Errs: failed}
+}
+
+// split takes joined errors apart; nil gives none.
+func split(err error) []error {
+	if err == nil {
+		return nil
+	}
+	if j, ok := err.(interface{ Unwrap() []error }); ok {
+		return j.Unwrap()
+	}
+	return []error{err}
 }

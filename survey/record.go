@@ -39,6 +39,7 @@ type Result struct {
 	Inputs     []Input               `json:"inputs"`
 	Rows       []Row                 `json:"rows"` // transition and solar rows used
 	Warnings   []string              `json:"warnings,omitempty"`
+	Failures   []string              `json:"failures,omitempty"` // lines asked for that could not be measured
 }
 
 // SpectrumInfo is what was read.

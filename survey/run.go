@@ -38,14 +38,15 @@ func Version() string {
 	return v
 }
 
-// Failed says which sightlines could not be done; the others were.
+// Failed says what could not be done: sightlines, or single lines of them. The
+// rest was.
 type Failed struct {
-	Of   int
+	Of   int // sightlines
 	Errs []error
 }
 
 func (f *Failed) Error() string {
-	return fmt.Sprintf("%d of %d sightlines failed: %v", len(f.Errs), f.Of, errors.Join(f.Errs...))
+	return fmt.Sprintf("%d failures in %d sightlines: %v", len(f.Errs), f.Of, errors.Join(f.Errs...))
 }
 
 // Mistakes reports whether every failure is the user's to mend.
@@ -70,6 +71,7 @@ type Options struct {
 type chain struct {
 	cfg     *config.Survey
 	table   *atomic.Table
+	base    *atomic.Table // the same with the default set of f
 	formula frame.Formula
 }
 
@@ -103,6 +105,9 @@ func Run(ctx context.Context, cfg *config.Survey, o Options) ([]Record, error) {
 	}
 	var err error
 	if c.table, err = Tables(cfg.FSet, own); err != nil {
+		return nil, err
+	}
+	if c.base, err = Tables("default", own); err != nil {
 		return nil, err
 	}
 	todo, err := choose(cfg, o.Only)

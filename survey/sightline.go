@@ -1,6 +1,7 @@
 package survey
 
 import (
+	"errors"
 	"fmt"
 
 	"lacuna/abundance"
@@ -23,15 +24,26 @@ func (c *chain) record(s config.Sightline, index int, have func(string) (Record,
 	if have != nil {
 		if old, ok := have(rec.Key); ok && old.Status == statusDone {
 			old.Index = index
-			return old, nil
+			return old, c.failures(old)
 		}
 	}
 	rec.Result, err = c.sightline(s)
 	rec.Result.Inputs = inputs
 	if err != nil {
 		rec.Status, rec.Error = statusFailed, err.Error()
+		return rec, err
 	}
-	return rec, err
+	return rec, c.failures(rec)
+}
+
+// failures is the error of a record whose sightline came through without some of
+// its lines.
+func (c *chain) failures(r Record) error {
+	var errs []error
+	for _, f := range r.Result.Failures {
+		errs = append(errs, oops.Input(c.cfg.File, r.Name, f, ""))
+	}
+	return errors.Join(errs...)
 }
 
 // sightline is the chain itself: spectra → widths → clouds → columns → abundances.
@@ -47,15 +59,20 @@ func (c *chain) sightline(s config.Sightline) (Result, error) {
 		if err != nil {
 			return res, err
 		}
-		pieces, err := Cut(lights, tasks, c.table)
-		if err != nil {
-			return res, at(c.cfg.File, s.Name, err)
-		}
+		pieces := Cut(lights, tasks, c.table)
 		var missing []string
-		if res.Widths, missing, err = pieces.Measure(); err != nil {
-			return res, at(c.cfg.File, s.Name, err)
+		res.Widths, missing, err = pieces.Measure()
+		for _, e := range split(err) {
+			if !oops.IsInput(e) {
+				return res, at(c.cfg.File, s.Name, e)
+			}
+			res.Failures = append(res.Failures, e.Error())
+		}
+		if res.Widths == nil && err != nil {
+			return res, at(c.cfg.File, s.Name, split(err)[0])
 		}
 		res.Warnings = append(res.Warnings, missing...)
+		c.defaults(res.Widths)
 		if err := c.fits(&res, pieces, s); err != nil {
 			return res, at(c.cfg.File, s.Name, err)
 		}
@@ -76,6 +93,16 @@ func (c *chain) sightline(s config.Sightline) (Result, error) {
 	}
 	res.Rows = c.rows(res)
 	return res, nil
+}
+
+// defaults gives each width the f of the default set, where the survey chose
+// another set and its value differs: columns go as 1/f.
+func (c *chain) defaults(ws []measure.Width) {
+	for i := range ws {
+		if l, err := c.base.Find(ws[i].Line); err == nil && l.F != ws[i].F {
+			ws[i].FDefault = l.F
+		}
+	}
 }
 
 // at puts the file and the sightline before an error, and keeps its kind.

@@ -73,10 +73,7 @@ func fitAction(c *cli.Context) error {
 			return usage(c, "--clouds: %g km/s lies outside the window %s", v, c.String("window"))
 		}
 	}
-	pieces, err := survey.Cut(a.lights, a.tasks, a.table)
-	if err != nil {
-		return fmt.Errorf("%s: %w", a.path, err)
-	}
+	pieces := survey.Cut(a.lights, a.tasks, a.table)
 	rec := a.record(c)
 	res := &rec.Result
 	if res.Widths, res.Warnings, err = pieces.Measure(); err != nil {
