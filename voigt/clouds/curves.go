@@ -41,7 +41,8 @@ func (f *Fitter) Curves(k int, x []float64) (Curves, error) {
 	if w.width >= 0 {
 		w0 = x[w.cols[w.width]]
 	}
-	if err := full.regrid(w.grid.b, w.q, w0, 0); err != nil {
+	full.shift = w.shift
+	if err := full.regrid(f.comps, w.grid.q, w0, 0); err != nil {
 		return c, err
 	}
 	n := len(in.Wave)

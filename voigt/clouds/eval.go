@@ -85,10 +85,7 @@ func (w *window) absorption(comps []comp, x []float64, slopes bool) {
 	if w.width >= 0 {
 		w.grid.set(x[w.cols[w.width]])
 	}
-	w.shift = 0
-	for _, t := range w.zeroAt {
-		w.shift += t.k * x[t.j]
-	}
+	w.place(x)
 	for i := range w.absorb {
 		a := &w.absorb[i]
 		w.line(a, &comps[a.comp], slopes)
@@ -107,6 +104,14 @@ func (w *window) absorption(comps []comp, x []float64, slopes bool) {
 	for i, wt := range w.grid.weight {
 		first := w.grid.first[i]
 		w.flux[i] = floats.Dot(wt, w.trans[first:first+len(wt)])
+	}
+}
+
+// place sets the velocity zero point.
+func (w *window) place(x []float64) {
+	w.shift = 0
+	for _, t := range w.zeroAt {
+		w.shift += t.k * x[t.j]
 	}
 }
 

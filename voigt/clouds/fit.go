@@ -80,7 +80,11 @@ func (f *Fitter) round(s *state, lo, hi []float64) error {
 		}
 		return nil
 	}
-	sol, err := lsq.Fit(f, s.x, lo, hi, lsq.Options{NoCovariance: true, Slow: slow, MaxIterations: 400}, &f.ws)
+	o := lsq.Options{NoCovariance: true, Slow: slow, MaxIterations: 400}
+	if f.quick {
+		o = lsq.Options{NoCovariance: true, Slow: 2, Tol: 0.05, MaxIterations: 60}
+	}
+	sol, err := lsq.Fit(f, s.x, lo, hi, o, &f.ws)
 	if err != nil {
 		for _, w := range f.wins {
 			if w.lost {

@@ -25,6 +25,7 @@ type Fitter struct {
 	start  []float64
 	rows   int       // residuals
 	hold   *hold     // one more row, during a profile
+	quick  bool      // stop early: only whether a start leads anywhere is asked
 	gridX  []float64 // the point that the sub-grids were made for
 	ws     lsq.Workspace
 }
@@ -281,12 +282,11 @@ func (f *Fitter) regrid(x []float64) error {
 		f.comps[i].set(x)
 	}
 	for _, w := range f.wins {
-		b, tau := math.Inf(1), 0.0
+		w.place(x)
+		tau := 0.0
 		for _, a := range w.absorb {
-			c := &f.comps[a.comp]
-			if c.B > 0 {
-				b = min(b, c.B)
-				tau = max(tau, peakTau(a.line, c.N, c.B))
+			if c := &f.comps[a.comp]; c.B > 0 {
+				tau = max(tau, math.Abs(peakTau(a.line, c.N, c.B)))
 			}
 		}
 		q := f.q
@@ -296,24 +296,22 @@ func (f *Fitter) regrid(x []float64) error {
 				q = 6
 			}
 		}
-		if math.IsInf(b, 1) {
-			b = 10
-		}
 		w0, h := 0.0, 0.0
 		if w.width >= 0 {
 			k := f.params.free[w.cols[w.width]]
 			w0 = x[w.cols[w.width]]
 			h = min(max(2*f.params.all[k].par.Sigma, 0.02), 0.15)
 		}
-		if err := w.regrid(gridPart*b, q, w0, h); err != nil {
+		if err := w.regrid(f.comps, q, w0, h); err != nil {
 			return err
 		}
 	}
 	return nil
 }
 
-// The sub-grid is made for a b this much below the narrowest, so that clouds may
-// become narrower during a fit; and renewed when one falls below gridLimit of that.
+// The sub-grid is made for clouds this much narrower than they are, so that they may
+// become narrower during a fit; and renewed when one has fewer than gridLimit times the
+// points that were asked for.
 const (
 	gridPart  = 0.7
 	gridLimit = 0.8
@@ -325,9 +323,9 @@ func (f *Fitter) stale(x []float64) bool {
 		f.comps[i].set(x)
 	}
 	for _, w := range f.wins {
-		for _, a := range w.absorb {
-			c := &f.comps[a.comp]
-			if c.B < gridLimit*w.grid.b {
+		w.place(x)
+		for _, c := range w.cores(f.comps) {
+			if !w.grid.density.covers(c, w.grid.q) {
 				return true
 			}
 		}

@@ -26,36 +26,90 @@ type grid struct {
 	trim      [][2]int    // of each row: where its weights count for a derivative
 	at, delta float64
 	wide      bool // the width is free
-	b         float64
+	density   density
+	q         float64 // steps in b or in 2σ that it was made for
 	fwhm      float64 // km/s, in the middle of the window
 }
 
-// A gridCache keeps the grids that were made, for fits of the same windows again: with
-// other numbers of clouds, from other starts. It belongs to one goroutine.
+// A gridCache keeps the even grids that were made, for fits of the same windows again:
+// with other numbers of clouds, from other starts. It belongs to one goroutine.
 type gridCache struct {
 	keys  []gridKey
 	grids []*grid
 }
 
 type gridKey struct {
-	window   *float64 // its first wavelength
-	b, q, w0 float64
-	h        float64
+	window *float64 // its first wavelength
+	far, q float64
+	w0, h  float64
 }
 
-// get returns a grid for at least this b, made if need be: b is rounded down to steps
-// of 19 %, w0 to steps of 0.05, so that a fit that moves a little finds it again.
-func (c *gridCache) get(edges []float64, in *Window, pix []int, b, q, w0, h float64) (*grid, error) {
+// A gridPlan is what a grid is made for.
+type gridPlan struct {
+	edges []float64
+	pix   []int
+	in    *Window
+	q     float64
+	w0, h float64 // the width of the profile, and how far it may go
+	cores []core
+}
+
+// An uneven grid is good to 1e-9 at best; who asks for more steps than this wants more.
+const evenFrom = 10
+
+// get returns a grid for a plan: even where that takes hardly more points, and then an
+// old one if there is one that serves; else one that crowds about the narrow lines. For
+// even grids b is rounded down to steps of 19 %, so that a fit that moves a little finds it
+// again; so is w0, to steps of 0.05.
+func (c *gridCache) get(p gridPlan) (*grid, error) {
+	p.w0 = 0.05 * math.Round(p.w0/0.05)
+	base := lsf.Scaled(p.in.Profile, math.Exp(p.w0))
+	narrow := math.Inf(1) // 2σ of the narrowest profile over c
+	for _, e := range p.edges {
+		if s := base.Sigma(e); e > 0 && s > 0 {
+			narrow = min(narrow, 2*s*math.Exp(-p.h)/e)
+		}
+	}
+	wide := lsf.Scaled(base, math.Exp(p.h))
+	if len(p.edges) < 2 || math.IsInf(narrow, 1) || !(p.edges[0] > 0) {
+		_, err := lsf.New(p.edges, wide, 1, p.q) // says what is wrong
+		return nil, err
+	}
+	lo, hi := p.edges[0], p.edges[len(p.edges)-1]
+	lo, hi = math.Log(lo-wide.Reach(lo)), math.Log(hi+wide.Reach(hi))
+	d := density{far: p.q / narrow}
+	b := math.Inf(1)
+	fwhm := 1.1775 * narrow
+	for _, k := range p.cores {
+		near := p.q * atomic.C / (gridPart * k.b)
+		b = min(b, gridPart*k.b)
+		r := k.b / atomic.C
+		if near > d.far && k.x > lo-10*r && k.x < hi+10*r {
+			d.bumps = append(d.bumps, bump{k.x, near, 1.6*k.reach*r + 0.2*fwhm})
+		}
+	}
+	if even, uneven := d.even(hi - lo); uneven < 0.7*even && p.q <= evenFrom {
+		sub, step := d.points(lo-1/d.far, hi)
+		r, err := lsf.On(p.edges, wide, sub, step)
+		if err != nil {
+			return nil, err
+		}
+		return newGrid(r, base, p, d)
+	}
 	b = math.Exp2(math.Floor(4*math.Log2(b)) / 4)
-	w0 = 0.05 * math.Round(w0/0.05)
-	key := gridKey{&in.Wave[0], b, q, w0, h}
+	d = density{far: max(d.far, p.q*atomic.C/b)}
+	key := gridKey{&p.in.Wave[0], d.far, p.q, p.w0, p.h}
 	for i, k := range c.keys {
 		if k == key {
 			return c.grids[i], nil
 		}
 	}
-	g := new(grid)
-	if err := g.make(edges, in.Profile, pix, b, q, w0, h); err != nil {
+	r, err := lsf.New(p.edges, wide, p.q*atomic.C/d.far, p.q)
+	if err != nil {
+		return nil, err
+	}
+	g, err := newGrid(r, base, p, d)
+	if err != nil {
 		return nil, err
 	}
 	const most = 64
@@ -70,28 +124,17 @@ func (c *gridCache) get(edges []float64, in *Window, pix []int, b, q, w0, h floa
 // leaves out: derivatives need no more than five digits.
 const trimTol = 1e-6
 
-// make builds the grid; h > 0 makes the width free.
-func (g *grid) make(edges []float64, p lsf.Profile, pix []int, b, q, w0, h float64) error {
-	mid := edges[len(edges)/2]
-	base := lsf.Scaled(p, math.Exp(w0))
-	narrow := math.Inf(1) // 2σ of the narrowest profile, km/s
-	for _, e := range edges {
-		if s := base.Sigma(e); e > 0 && s > 0 {
-			narrow = min(narrow, 2*s*math.Exp(-h)/e*atomic.C)
-		}
-	}
-	r, err := lsf.New(edges, lsf.Scaled(base, math.Exp(h)), min(b, narrow), q)
-	if err != nil {
-		return err
-	}
-	*g = grid{sub: r.Sub, at: w0, b: b, wide: h > 0, fwhm: 2.354820045 * p.Sigma(mid) / mid * atomic.C}
+// newGrid makes a grid of the response to the widest profile.
+func newGrid(wide lsf.Response, base lsf.Profile, p gridPlan, d density) (*grid, error) {
+	mid := p.edges[len(p.edges)/2]
+	g := &grid{sub: wide.Sub, at: p.w0, wide: p.h > 0, density: d, q: p.q, fwhm: 2.354820045 * p.in.Profile.Sigma(mid) / mid * atomic.C}
 	if !g.wide {
-		g.first, g.weight = pick(r, pix)
-	} else if err := g.parabola(r, edges, base, pix, h); err != nil {
-		return err
+		g.first, g.weight = pick(wide, p.pix)
+	} else if err := g.parabola(wide, p.edges, base, p.pix, p.h); err != nil {
+		return nil, err
 	}
 	g.trimAll()
-	return nil
+	return g, nil
 }
 
 // trimAll finds which weights count for a derivative.

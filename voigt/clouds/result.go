@@ -278,6 +278,9 @@ func (r *Result) species(f *Fitter, a *analysis, d *comp) SpeciesFit {
 		out.LogN = a.number(d.logN(), gn, pn)
 		out.N = budget.Pow10(out.LogN)
 	}
+	if pb.AtBound != 0 { // the error of N is that for this b
+		out.N, out.LogN = out.N.With(budget.AtBound), out.LogN.With(budget.AtBound)
+	}
 	if out.Weakest > saturatedTau {
 		out.N, out.LogN = out.N.With(budget.Saturated), out.LogN.With(budget.Saturated)
 	}

@@ -63,7 +63,7 @@ func (c *fitCases) problem(k fitCase, degree int) Problem {
 func (c *fitCases) asScript(f *Fitter) {
 	for _, w := range f.wins {
 		l := w.in.Lines[0]
-		g := &grid{fwhm: c.FWHM, b: 1e-9}
+		g := &grid{fwhm: c.FWHM, density: density{far: math.Inf(1)}}
 		for _, v := range c.Sub {
 			g.sub = append(g.sub, l.Wave*(1+v/atomic.C))
 		}

@@ -157,8 +157,25 @@ func (h *hunt) criterion(s *Solution) float64 {
 	return s.BIC
 }
 
-// try fits some clouds and enters the solution; nil if the fit cannot be made.
-func (h *hunt) try(cs []Cloud, shared []Shared) (*Solution, error) {
+// glance fits some clouds only so far that it shows where that leads: the clouds, and
+// the criterion there. ok is false if the fit cannot be made.
+func (h *hunt) glance(cs []Cloud, shared []Shared) (at []Cloud, with []Shared, chi2, crit float64, ok bool, err error) {
+	f, err := h.fitter(cs, shared)
+	if err != nil {
+		return nil, nil, 0, 0, false, err
+	}
+	f.quick = true
+	s, err := f.minimise(f.start, f.lo, f.hi)
+	if err != nil {
+		return nil, nil, 0, 0, false, nil // a start from which nothing can be computed is no mistake of the user
+	}
+	r := Result{Chi2: s.chi2}
+	r.count(f)
+	return f.Clouds(s.x), f.SharedAt(s.x), s.chi2, h.criterion(&Solution{BIC: r.BIC, AICc: r.AICc}), true, nil
+}
+
+// fitter makes the problem of some clouds.
+func (h *hunt) fitter(cs []Cloud, shared []Shared) (*Fitter, error) {
 	p := Problem{Windows: h.Windows, Shared: shared}
 	cs = slices.Clone(cs)
 	slices.SortStableFunc(cs, func(a, b Cloud) int { return cmp.Compare(a.V.Start, b.V.Start) })
@@ -169,7 +186,12 @@ func (h *hunt) try(cs []Cloud, shared []Shared) (*Solution, error) {
 	if len(cs) == 0 {
 		p.Shared = nil
 	}
-	f, err := New(p, h.Options)
+	return New(p, h.Options)
+}
+
+// try fits some clouds and enters the solution; nil if the fit cannot be made.
+func (h *hunt) try(cs []Cloud, shared []Shared) (*Solution, error) {
+	f, err := h.fitter(cs, shared)
 	if err != nil {
 		return nil, err
 	}
@@ -178,7 +200,7 @@ func (h *hunt) try(cs []Cloud, shared []Shared) (*Solution, error) {
 		if len(cs) == 0 {
 			return nil, err
 		}
-		return nil, nil // a start from which nothing can be computed is no mistake of the user
+		return nil, nil
 	}
 	s := &Solution{Number: len(cs), Chi2: r.Chi2, BIC: r.BIC, AICc: r.AICc, result: r, fitter: f}
 	s.clouds = f.Clouds(r.X)
@@ -276,17 +298,6 @@ func (f *Fitter) undetected(a *analysis, cloud int) string {
 
 // more adds a cloud to a solution in the best of several ways.
 func (h *hunt) more(s *Solution) (*Solution, error) {
-	var best *Solution
-	take := func(cs []Cloud) error {
-		t, err := h.try(cs, s.shared)
-		if err != nil {
-			return err
-		}
-		if t != nil && (best == nil || (t.Refused == "") == (best.Refused == "") && t.Chi2 < best.Chi2 || best.Refused != "" && t.Refused == "") {
-			best = t
-		}
-		return nil
-	}
 	var starts [][]Cloud
 	for _, p := range s.fitter.scan(s.result, h.Search) {
 		starts = append(starts, append(slices.Clone(s.clouds), h.cloud(p.v, p.b, p.n)))
@@ -306,23 +317,56 @@ func (h *hunt) more(s *Solution) (*Solution, error) {
 	for range random {
 		starts = append(starts, h.shake(starts[rng.IntN(ask)], rng))
 	}
+	type lead struct {
+		cs     []Cloud
+		shared []Shared
+		chi2   float64
+	}
+	var leads []lead
 	for _, cs := range starts {
-		if err := take(cs); err != nil {
+		at, shared, chi2, _, ok, err := h.glance(cs, s.shared)
+		if err != nil {
 			return nil, err
+		}
+		if ok {
+			leads = append(leads, lead{at, shared, chi2})
+		}
+	}
+	slices.SortStableFunc(leads, func(a, b lead) int { return cmp.Compare(a.chi2, b.chi2) })
+	// The best, and others nearly as good: they may be other minima.
+	var best *Solution
+	for i, l := range leads {
+		if i > 0 && (l.chi2 > leads[0].chi2+structureBIC || i > 3) {
+			break
+		}
+		t, err := h.try(l.cs, l.shared)
+		if err != nil {
+			return nil, err
+		}
+		if t != nil && (best == nil || (t.Refused == "") == (best.Refused == "") && t.Chi2 < best.Chi2 || best.Refused != "" && t.Refused == "") {
+			best = t
 		}
 	}
 	return best, nil
 }
 
-// fewer drops each cloud of a solution, and merges neighbours.
+// fewer drops each cloud of a solution, and merges neighbours; what comes near the best
+// is fitted to the end.
 func (h *hunt) fewer(s *Solution) error {
 	for i := range s.clouds {
-		cs := slices.Delete(slices.Clone(s.clouds), i, i+1)
-		if _, err := h.try(cs, s.shared); err != nil {
-			return err
-		}
+		ways := [][]Cloud{slices.Delete(slices.Clone(s.clouds), i, i+1)}
 		if i+1 < len(s.clouds) {
-			if _, err := h.try(h.merge(s.clouds, i), s.shared); err != nil {
+			ways = append(ways, h.merge(s.clouds, i))
+		}
+		for _, cs := range ways {
+			at, shared, _, crit, ok, err := h.glance(cs, s.shared)
+			if err != nil {
+				return err
+			}
+			if !ok || crit > h.criterion(h.best)+structureBIC+4 {
+				continue
+			}
+			if _, err := h.try(at, shared); err != nil {
 				return err
 			}
 		}

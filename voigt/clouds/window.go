@@ -236,15 +236,14 @@ func (w *window) column(j int) int {
 	return len(w.cols) - 1
 }
 
-// regrid makes the sub-grid for a narrowest Doppler parameter b (km/s), q steps in it,
-// and a width of the profile about exp(w0).
-func (w *window) regrid(b, q, w0, h float64) error {
+// regrid makes the sub-grid for the clouds at the current point, q steps in a Doppler
+// parameter, and a width of the profile about exp(w0).
+func (w *window) regrid(comps []comp, q, w0, h float64) error {
 	edges := w.in.Edges
 	if edges == nil {
 		edges = lsf.Edges(w.in.Wave)
 	}
-	w.q = q
-	g, err := w.cache.get(edges, w.in, w.pix, b, q, w0, h)
+	g, err := w.cache.get(gridPlan{edges: edges, pix: w.pix, in: w.in, q: q, w0: w0, h: h, cores: w.cores(comps)})
 	if err != nil {
 		if m, ok := err.(*oops.Mistake); ok {
 			m.Where = w.name + ": " + m.Where
@@ -273,10 +272,14 @@ func (w *window) regrid(b, q, w0, h float64) error {
 			w.factor[j] = spline.Predict(min(max(x, f.Wave[0]), f.Wave[len(f.Wave)-1]))
 		}
 	}
-	// Members of a line closer than a tenth of the narrowest b act as one.
+	// Members of a line closer than a tenth of its b act as one.
 	for i := range w.absorb {
 		a := &w.absorb[i]
-		a.parts = a.line.Within(0.1 * b)
+		if c := &comps[a.comp]; c.B > 0 {
+			a.parts = a.line.Within(0.1 * gridPart * c.B)
+		} else {
+			a.parts = a.line.Within(0)
+		}
 	}
 	return nil
 }
