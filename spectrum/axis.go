@@ -173,6 +173,7 @@ func (r *reader) axisUnit(h *fits.HDU, c cards, ctype string, first, last float6
 		first, last = math.Pow(10, first), math.Pow(10, last)
 	}
 	if u, name, ok := unitBySize(first, last); ok {
+		w.guessed = true
 		w.notes = append(w.notes, "the axis has no unit: taken for "+name+" by its size")
 		return u, nil, nil
 	}

@@ -208,6 +208,7 @@ func (r *reader) toWave(s *Segment, v []float64, said, fromName string, log10 bo
 		if u, name, ok = unitBySize(first, last); !ok {
 			return s.fail(fmt.Sprintf("wavelengths from %g to %g have no unit", first, last), `give it: unit = "Angstrom", "nm", "um", …`)
 		}
+		s.UnitGuessed = true
 		s.note("wavelengths have no unit: taken for %s by their size", name)
 	case !ok:
 		return s.fail(fmt.Sprintf("'%s' is not a unit of wavelength", name), `give it: unit = "Angstrom", "nm", "um", …`)

@@ -71,6 +71,8 @@ type law struct {
 	ctype string
 	kind  string
 	notes []string
+
+	guessed bool // the unit
 }
 
 // image reads one flux image with a spectral axis, and what belongs to it.
@@ -88,7 +90,11 @@ func (r *reader) image(h *fits.HDU) error {
 	if err != nil {
 		return err
 	}
-	return r.imageLines(h, plan, clue{ctype: w.ctype}, func(aline, *Segment) ([]float64, error) {
+	if n, _ := orderInTitle(h.Str("OBJECT")); n > 0 && len(plan) == 1 && plan[0].label == "" { // one HDU an order
+		plan[0].order, plan[0].label = n, fmt.Sprintf("order %d", n)
+	}
+	return r.imageLines(h, plan, clue{ctype: w.ctype}, func(_ aline, s *Segment) ([]float64, error) {
+		s.UnitGuessed = w.guessed
 		wave := make([]float64, n)
 		for i := range wave {
 			wave[i] = w.at(float64(i + 1))

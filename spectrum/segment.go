@@ -50,6 +50,7 @@ type Segment struct {
 	FrameBy         string
 	Shift           []frame.Applied
 	Unit            string  // of the flux, as the file says
+	UnitGuessed     bool    // the wavelengths came without a unit, and their size gave it: enough to look at, not to measure
 	Resolution      float64 // λ/FWHM from the header, 0 unknown
 	Coord           *Coord  // direction of the star, nil unknown
 	Normalised      bool    // the file says that its continuum is 1

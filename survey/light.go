@@ -74,6 +74,9 @@ func Open(path string, sp config.Spectrum, at *spectrum.Coord, to frame.Kind, fo
 		if len(sp.Orders) > 0 && !slices.Contains(sp.Orders, seg.Order) {
 			continue
 		}
+		if seg.UnitGuessed {
+			return nil, SpectrumInfo{}, oops.Input(path, seg.Label, "its wavelengths come without a unit", `say it: unit = "Angstrom" (lacuna inspect shows what their size suggests)`)
+		}
 		maskRanges(&seg, sp.Mask)
 		if sp.Normalised != nil {
 			seg.Normalised = *sp.Normalised
