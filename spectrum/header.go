@@ -1,6 +1,8 @@
 package spectrum
 
 import (
+	"fmt"
+	"math"
 	"strconv"
 	"strings"
 
@@ -76,29 +78,56 @@ func (r *reader) describe(c cards) {
 		// Calibration templates put a job name into OBJECT: ESO keeps the star apart.
 		for _, key := range []string{"ESO OBS TARG NAME", "TARGNAME", "OBJECT", "OBJNAME", "TARGET", "LTARGET", "STARGET"} {
 			if v := c.str(key); v != "" {
-				r.s.Object = v
+				_, r.s.Object = orderInTitle(v)
 				break
 			}
 		}
 	}
 	if r.s.Coord == nil {
-		r.s.Coord = direction(c)
+		var note string
+		if r.s.Coord, note = direction(c); note != "" {
+			r.s.Notes = append(r.s.Notes, note)
+		}
 	}
 }
 
-// direction reads RA and Dec in degrees or as hours and degrees with colons.
-func direction(c cards) *Coord {
+// orderInTitle takes the number of an order off a title: "ORDER:  7 HD 222259A".
+func orderInTitle(title string) (order int, rest string) {
+	after, ok := strings.CutPrefix(title, "ORDER:")
+	if !ok {
+		return 0, title
+	}
+	number, rest, _ := strings.Cut(strings.TrimSpace(after), " ")
+	n, err := strconv.Atoi(number)
+	if err != nil || n < 1 {
+		return 0, title
+	}
+	return n, strings.TrimSpace(rest)
+}
+
+// direction reads RA and Dec in degrees or as hours and degrees with colons. Some
+// writers put decimal hours into RA: the telescope's own hours and minutes show it.
+func direction(c cards) (*Coord, string) {
 	if eq, ok := c.maybe("EQUINOX"); ok && (eq < 1999 || eq > 2001) {
-		return nil // not J2000: precession is not done here
+		return nil, "" // not J2000: precession is not done here
 	}
 	for _, k := range [][2]string{{"RA_TARG", "DEC_TARG"}, {"RA", "DEC"}, {"RA-D", "DEC-D"}, {"OBJCTRA", "OBJCTDEC"}} {
 		ra, ok1 := angle(c.str(k[0]), 15)
 		dec, ok2 := angle(c.str(k[1]), 1)
-		if ok1 && ok2 && ra >= 0 && ra < 360 && dec >= -90 && dec <= 90 {
-			return &Coord{ra, dec}
+		if !ok1 || !ok2 || ra < 0 || ra >= 360 || dec < -90 || dec > 90 {
+			continue
 		}
+		for _, other := range []string{"TELRA", "OBJCTRA", "CATRA", "TCSRA"} {
+			if text := c.str(other); strings.Count(text, ":") == 2 {
+				at, ok := angle(text, 15)
+				if near := func(x float64) bool { return math.Abs(math.Remainder(x-at, 360)) < 0.5 }; ok && ra < 24 && !near(ra) && near(15*ra) {
+					return &Coord{15 * ra, dec}, fmt.Sprintf("%s = %g is in hours, as %s = %s shows", k[0], ra, other, text)
+				}
+			}
+		}
+		return &Coord{ra, dec}, ""
 	}
-	return nil
+	return nil, ""
 }
 
 // angle reads "312.2" or "20:48:56.3"; the second counts perUnit degrees a unit.

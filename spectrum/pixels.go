@@ -70,7 +70,7 @@ func (s *Segment) order(p *pixels) error {
 					what = "the same wavelength twice, not monotonic"
 				}
 				return s.fail(fmt.Sprintf("%s: wavelength %.6g after %.6g Å, %s", p.at(i), w, p.wave[last], what),
-					"overlapping orders must be in separate files or segments")
+					`overlapping orders must be in separate files or segments; if the table lists orders, say layout = "orders"`)
 			}
 		}
 		last = i
