@@ -125,6 +125,16 @@ func (r *Result) diagnose(f *Fitter, a *analysis) {
 	if !r.Converged {
 		r.note("the fit did not converge: %s", r.Stop)
 	}
+	for _, w := range r.Windows {
+		if dof := float64(r.DOF) * float64(w.Pixels) / float64(r.Pixels); dof > 0 && w.Chi2 > dof+5*math.Sqrt(2*dof) {
+			r.note("%s: χ² = %.0f for %.0f degrees of freedom: the model does not describe this window", w.Name, w.Chi2, dof)
+		}
+	}
+	for _, p := range f.priors {
+		if d := (p.value.at(r.X) - p.mean) / p.sigma; math.Abs(d) > 3 {
+			r.note("%s: %.3g, %.1fσ from its prior %.3g ± %.3g", p.name, p.value.at(r.X), d, p.mean, p.sigma)
+		}
+	}
 	free := r.Free()
 	for i := range free {
 		for j := range i {

@@ -32,7 +32,9 @@
 // (Window.Rho; the Cholesky factor of the banded covariance of the pixels that are not
 // masked) and of the priors. Continuum and zero level are projected out (Kaufman 1975,
 // BIT 15, 49; from memory), the rest is found by Levenberg–Marquardt with analytic
-// derivatives (package internal/lsq).
+// derivatives (package internal/lsq). Fitter.Fit starts from the user's clouds,
+// Fitter.FitBest from random ones about them as well, Search finds number and places
+// itself.
 //
 // # Errors
 //
@@ -43,5 +45,29 @@
 // whole. The strengths of the lines are taken as known in the fit; what 1σ of each would
 // change is added as a shift with the line's key. A direction that the data do not
 // determine leaves NaN in the Number of a parameter (kind "none") but not in a total
-// that does not depend on it.
+// that does not depend on it. A b below a third of the instrument's is an upper limit; a
+// column that is not detected is N ± σ with a limit of 3σ.
+//
+// Where a parabola is a poor guide to χ² (saturated and blended lines), Fitter.Profile gives
+// intervals by profile likelihood, Fitter.Sampler the posterior, Fitter.Bootstrap refits
+// of simulated spectra, and Fitter.UpperLimit limits by Δχ².
+//
+// # Number of clouds
+//
+// With a number that was chosen from the data, errors of single clouds hold only if
+// the number is right (Leeb & Pötscher 2005, Econometric Theory 21, 21); Result.Conditional
+// says so. What stays are sums over ranges of velocity (Found.Ranges), with an error of
+// their own for the structure: the spread over all solutions within ΔBIC < 6, and what a
+// further cloud could hide, by the profile likelihood of the column with one more. The
+// latter is large, and upward, where lines are saturated and not resolved.
+//
+// # Use
+//
+//	f, err := clouds.New(clouds.Problem{Windows: windows, Clouds: starts}, clouds.Options{})
+//	r, err := f.Fit()          // r.Clouds, r.Totals, r.Windows, r.Notes
+//	err = f.Asymmetric(&r)     // saturated columns: errors from their profiles
+//	c, err := f.Curves(0, r.X) // for a figure of the first window
+//
+// A Fitter belongs to one goroutine. One problem with other data (SetFlux) needs no new
+// one; nothing is allocated while χ² is minimised.
 package clouds

@@ -80,9 +80,12 @@ func (f *Fitter) round(s *state, lo, hi []float64) error {
 		}
 		return nil
 	}
-	o := lsq.Options{NoCovariance: true, Slow: slow, MaxIterations: 400}
-	if f.quick {
-		o = lsq.Options{NoCovariance: true, Slow: 2, Tol: 0.05, MaxIterations: 60}
+	o := lsq.Options{NoCovariance: true, Tol: f.tol, Slow: slow, MaxIterations: 400}
+	if f.slow > 0 {
+		o.Slow = f.slow
+	}
+	if f.most > 0 {
+		o.MaxIterations = f.most
 	}
 	sol, err := lsq.Fit(f, s.x, lo, hi, o, &f.ws)
 	if err != nil {

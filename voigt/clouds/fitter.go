@@ -23,15 +23,18 @@ type Fitter struct {
 	q      float64 // sub-grid steps asked for; 0: automatic
 	lo, hi []float64
 	start  []float64
-	rows   int       // residuals
-	hold   *hold     // one more row, during a profile
-	quick  bool      // stop early: only whether a start leads anywhere is asked
-	gridX  []float64 // the point that the sub-grids were made for
-	ws     lsq.Workspace
+	rows   int   // residuals
+	hold   *hold // one more row, during a profile
+	// When a fit ends: see lsq.Options. 0: the defaults of round.
+	tol, slow float64
+	most      int
+	gridX     []float64 // the point that the sub-grids were made for
+	ws        lsq.Workspace
 }
 
 // A prior is one row: a linear function of the parameters with a Gaussian error.
 type prior struct {
+	name        string
 	value       form
 	mean, sigma float64
 }
@@ -95,7 +98,7 @@ func New(p Problem, o Options) (*Fitter, error) {
 	}
 	for _, a := range f.params.all {
 		if a.par.Sigma > 0 && !(a.par.Fixed) {
-			f.priors = append(f.priors, prior{a.value, a.par.Mean, a.par.Sigma})
+			f.priors = append(f.priors, prior{a.name, a.value, a.par.Mean, a.par.Sigma})
 		}
 	}
 	for _, k := range f.params.free {

@@ -10,8 +10,8 @@ import (
 	"lacuna/voigt/lsf"
 )
 
-// everything is a problem that uses all that a model has.
-func everything(t *testing.T) *Fitter {
+// allOfIt is a problem that uses all that a model has.
+func allOfIt(t *testing.T) *Fitter {
 	t.Helper()
 	table := atomic.Default()
 	line := func(name string) atomic.Line {
@@ -79,7 +79,7 @@ func everything(t *testing.T) *Fitter {
 // continuum leaves, Kaufman's derivative lacks a term; so the continuum is taken as
 // known here (the columns of window.d, with the linear parameters frozen).
 func TestJacobian(t *testing.T) {
-	f := everything(t)
+	f := allOfIt(t)
 	x := f.Start()
 	n := len(x)
 	frozen := func(x []float64) []float64 {
@@ -135,7 +135,7 @@ func TestJacobian(t *testing.T) {
 // With data that the model meets, the projected derivatives are those of the projected
 // residuals, and no evaluation allocates.
 func TestProjectedJacobian(t *testing.T) {
-	f := everything(t)
+	f := allOfIt(t)
 	x := f.Start()
 	for i := range f.comps {
 		f.comps[i].set(x)

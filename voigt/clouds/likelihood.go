@@ -30,9 +30,10 @@ type Interval struct {
 // A target is a function of the parameters that a profile runs along: a parameter, or
 // the column of a carrier over all clouds.
 type target struct {
-	free    int    // index of the free parameter; −1
-	carrier string // of a total
-	logs    bool   // in log₁₀
+	free    int        // index of the free parameter; −1
+	carrier string     // of a column
+	in      [2]float64 // km/s, of the column
+	logs    bool       // in log₁₀
 }
 
 // A hold is the row that keeps a target in its place during a fit.
@@ -59,7 +60,7 @@ func (f *Fitter) target(name string) (target, error) {
 		c = strings.TrimSuffix(c, ")")
 		for i := range f.comps {
 			if f.comps[i].carrier == c {
-				return target{free: -1, carrier: c, logs: true}, nil
+				return target{free: -1, carrier: c, in: everything, logs: true}, nil
 			}
 		}
 	}
@@ -73,25 +74,7 @@ func (f *Fitter) value(t target, x, grad []float64) float64 {
 	if t.free >= 0 {
 		return x[t.free]
 	}
-	clear(grad)
-	sum := 0.0
-	for i := range f.comps {
-		c := &f.comps[i]
-		if c.carrier != t.carrier {
-			continue
-		}
-		sum += c.N
-		if grad == nil {
-			continue
-		}
-		for _, u := range c.dn {
-			k := u.k
-			if !c.linear {
-				k *= c.N * math.Ln10
-			}
-			grad[u.j] += k
-		}
-	}
+	sum := f.columnIn(t.carrier, t.in, grad)
 	if !t.logs {
 		return sum
 	}
@@ -159,6 +142,9 @@ type profile struct {
 	sigma float64
 	base  float64 // lowest χ² so far
 	best  []float64
+	close float64 // how near √Δχ² shall come, relative; 0: 0.005
+	// Another start for the target at y, beside the last point of the walk; nil: none.
+	seed func(y float64) []float64
 }
 
 // chi2 fits everything else with the target at y, from x, which it moves.
@@ -176,9 +162,24 @@ func (p *profile) chi2(y float64, x *[]float64) (float64, error) {
 	if err != nil {
 		return 0, err
 	}
+	free := func(x []float64) float64 { // χ² without the row that holds the target
+		h := f.hold
+		f.hold = nil
+		c := f.chi2(x)
+		f.hold = h
+		return c
+	}
+	c := free(s.x)
+	if p.seed != nil {
+		if start := p.seed(y); start != nil {
+			if t, err := f.minimise(start, lo, hi); err == nil {
+				if d := free(t.x); d < c {
+					s, c = t, d
+				}
+			}
+		}
+	}
 	*x = s.x
-	f.hold = nil
-	c := f.chi2(s.x)
 	if c < p.base {
 		p.base, p.best = c, s.x
 	}
@@ -201,6 +202,10 @@ func (p *profile) edge(y0 float64, x0 []float64, delta float64, dir float64) (fl
 	x := slices.Clone(x0)
 	// √Δχ² is nearly linear in y: walk on until it passes √delta, then close in.
 	want := math.Sqrt(delta)
+	tol := p.close * want
+	if tol == 0 {
+		tol = 5e-3 * want
+	}
 	root := func(c float64) float64 { return math.Sqrt(max(0, c-p.base)) }
 	in, fin := y0, 0.0
 	out, fout := 0.0, 0.0
@@ -236,7 +241,7 @@ func (p *profile) edge(y0 float64, x0 []float64, delta float64, dir float64) (fl
 		return in, true, nil
 	}
 	for range 20 {
-		if fout-want < 5e-3*want || math.Abs(out-in) < 1e-3*math.Abs(out-y0) {
+		if fout-want < tol || math.Abs(out-in) < 1e-3*math.Abs(out-y0) {
 			break
 		}
 		y := in + (out-in)*min(max((want-fin)/(fout-fin), 0.05), 0.95)
@@ -249,7 +254,7 @@ func (p *profile) edge(y0 float64, x0 []float64, delta float64, dir float64) (fl
 			out, fout = y, g
 		} else {
 			in, fin = y, g
-			if want-g < 5e-3*want {
+			if want-g < tol {
 				return y, false, nil
 			}
 		}
@@ -262,7 +267,7 @@ func (p *profile) edge(y0 float64, x0 []float64, delta float64, dir float64) (fl
 // for N ≥ 0 (3: "3σ"), v, b and everything else following. N ± σ stands behind it.
 func (f *Fitter) UpperLimit(r Result, cloud, carrier string, sigma float64) (budget.Number, error) {
 	var n budget.Number
-	t := target{free: -1, carrier: carrier}
+	t := target{free: -1, carrier: carrier, in: everything}
 	if cloud == "" {
 		found := false
 		for _, q := range r.Totals {

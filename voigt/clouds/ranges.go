@@ -45,26 +45,10 @@ func (f *Fitter) Ranges(r Result, v ...[2]float64) []Range {
 	for _, lim := range v {
 		one := Range{V: lim}
 		for _, t := range r.Totals {
-			sum, grad := 0.0, make([]float64, a.n)
-			for i := range f.comps {
-				c := &f.comps[i]
-				if c.carrier != t.Carrier {
-					continue
-				}
-				p, dv, db := inside(lim, c.V, c.B)
-				sum += c.N * p
-				for j, g := range c.columnGradient(a.n) {
-					grad[j] += g * p
-				}
-				for _, u := range c.dv {
-					grad[u.j] += c.N * dv * u.k
-				}
-				for _, u := range c.db {
-					grad[u.j] += c.N * db * u.k
-				}
-			}
+			grad := make([]float64, a.n)
+			sum := f.columnIn(t.Carrier, lim, grad)
 			n := a.number(sum, grad).With(t.N.Flag)
-			one.Columns = append(one.Columns, RangeColumn{t.Carrier, n, budget.Log10(limited(n))})
+			one.Columns = append(one.Columns, RangeColumn{t.Carrier, n, r.logColumn(a, n, grad, t.Carrier)})
 		}
 		seen := map[string]bool{}
 		for _, w := range f.wins {
@@ -85,6 +69,41 @@ func (f *Fitter) Ranges(r Result, v ...[2]float64) []Range {
 	}
 	return out
 }
+
+// columnIn is the column of a carrier in a range at the current point of the comps; grad,
+// if not nil, is set to its gradient.
+func (f *Fitter) columnIn(carrier string, lim [2]float64, grad []float64) float64 {
+	clear(grad)
+	sum := 0.0
+	for i := range f.comps {
+		c := &f.comps[i]
+		if c.carrier != carrier {
+			continue
+		}
+		p, dv, db := inside(lim, c.V, c.B)
+		sum += c.N * p
+		if grad == nil {
+			continue
+		}
+		byN := p
+		if !c.linear {
+			byN *= c.N * math.Ln10
+		}
+		for _, u := range c.dn {
+			grad[u.j] += u.k * byN
+		}
+		for _, u := range c.dv {
+			grad[u.j] += c.N * dv * u.k
+		}
+		for _, u := range c.db {
+			grad[u.j] += c.N * db * u.k
+		}
+	}
+	return sum
+}
+
+// everything is the range without limits.
+var everything = [2]float64{math.Inf(-1), math.Inf(1)}
 
 // inside returns the part of a cloud between two velocities, and its derivatives by v
 // and b.

@@ -370,10 +370,29 @@ func (r *Result) totals(f *Fitter, a *analysis) {
 		t := sum[c]
 		flag := t.N.Flag
 		t.N = a.number(t.N.X, grad[c]).With(flag)
-		t.LogN = budget.Log10(limited(t.N))
+		t.LogN = r.logColumn(a, t.N, grad[c], c)
 		t.Naive = math.Sqrt(t.Naive)
 		r.Totals = append(r.Totals, *t)
 	}
+}
+
+// logColumn is the logarithm of a sum of columns n with gradient g. While the lines are
+// thin, n is what is normally distributed, and may be no detection; else log n is.
+func (r *Result) logColumn(a *analysis, n budget.Number, g []float64, carrier string) budget.Number {
+	thin := true
+	for _, c := range r.Clouds {
+		for _, s := range c.Species {
+			thin = thin && (s.Carrier != carrier || s.Tau0 < thinTau)
+		}
+	}
+	if thin || !(n.X > 0) || math.IsNaN(n.X) {
+		return budget.Log10(limited(n))
+	}
+	h := make([]float64, len(g))
+	for j := range g {
+		h[j] = g[j] / (n.X * math.Ln10)
+	}
+	return a.number(math.Log10(n.X), h).With(n.Flag)
 }
 
 // columnGradient returns ∂N/∂x.

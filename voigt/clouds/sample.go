@@ -58,7 +58,7 @@ func (s Sample) Parameter(name string) func(x []float64) float64 {
 // Column returns the function that is the column (cm⁻²) of a carrier over all clouds,
 // for Sample.Interval.
 func (f *Fitter) Column(carrier string) func(x []float64) float64 {
-	t := target{free: -1, carrier: carrier}
+	t := target{free: -1, carrier: carrier, in: everything}
 	return func(x []float64) float64 {
 		for i := range f.comps {
 			f.comps[i].set(x)

@@ -164,7 +164,7 @@ func (h *hunt) glance(cs []Cloud, shared []Shared) (at []Cloud, with []Shared, c
 	if err != nil {
 		return nil, nil, 0, 0, false, err
 	}
-	f.quick = true
+	f.tol, f.slow, f.most = 0.05, 2, 60
 	s, err := f.minimise(f.start, f.lo, f.hi)
 	if err != nil {
 		return nil, nil, 0, 0, false, nil // a start from which nothing can be computed is no mistake of the user
@@ -399,6 +399,9 @@ func (h *hunt) found() (Found, error) {
 		out.Solutions = append(out.Solutions, *s)
 	}
 	h.structure(&out, best)
+	if err := h.hidden(&out, best); err != nil {
+		return Found{}, err
+	}
 	if len(best.clouds) > 0 {
 		out.note("the number of clouds was chosen from the data: errors of single clouds hold for %d clouds only", len(best.clouds))
 	}
@@ -430,28 +433,34 @@ func (h *hunt) structure(out *Found, best *Solution) {
 		}
 		return math.Sqrt(sum / weight)
 	}
-	add := func(n budget.Number, of func(r []Range) float64) budget.Number {
-		if d := spread(n.X, of); d > 0 {
-			n = n.Add(budget.Shift{Cause: budget.Structure, D: d})
+	column := func(n, logN *budget.Number, of func(r []Range) float64) {
+		d := spread(n.X, of)
+		if !(d > 0) {
+			return
 		}
-		return n
+		*n = n.Add(budget.Shift{Cause: budget.Structure, D: d})
+		if logN.Kind() == "value" {
+			*logN = logN.Add(budget.Shift{Cause: budget.Structure, D: d / (n.X * math.Ln10)})
+		} else {
+			*logN = budget.Log10(limited(*n))
+		}
 	}
 	for i := range out.Totals {
 		t := &out.Totals[i]
-		t.N = add(t.N, func(r []Range) float64 { return r[0].Columns[i].N.X })
-		t.LogN = budget.Log10(limited(t.N))
+		column(&t.N, &t.LogN, func(r []Range) float64 { return r[0].Columns[i].N.X })
 	}
 	out.Ranges = slices.Clone(best.ranges[1:])
 	for k := range out.Ranges {
 		g := &out.Ranges[k]
 		for i := range g.Columns {
 			c := &g.Columns[i]
-			c.N = add(c.N, func(r []Range) float64 { return r[k+1].Columns[i].N.X })
-			c.LogN = budget.Log10(limited(c.N))
+			column(&c.N, &c.LogN, func(r []Range) float64 { return r[k+1].Columns[i].N.X })
 		}
 		for i := range g.Widths {
 			w := &g.Widths[i].W
-			*w = add(*w, func(r []Range) float64 { return r[k+1].Widths[i].W.X })
+			if d := spread(w.X, func(r []Range) float64 { return r[k+1].Widths[i].W.X }); d > 0 {
+				*w = w.Add(budget.Shift{Cause: budget.Structure, D: d})
+			}
 		}
 	}
 }

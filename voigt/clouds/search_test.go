@@ -6,6 +6,8 @@ import (
 	"math/rand/v2"
 	"testing"
 
+	"lacuna/atomic"
+	"lacuna/budget"
 	"lacuna/voigt/clouds"
 )
 
@@ -93,5 +95,44 @@ func TestSearchInNoise(t *testing.T) {
 	}
 	if found > 1 {
 		t.Errorf("clouds in %d of %d spectra of noise", found, trials)
+	}
+}
+
+// Three clouds hidden in one (b 0.6, 0.8 and 3 km/s at FWHM 7.5): the fewest clouds give a
+// column that is low by 0.07 to 0.1 dex, whatever their own error says (0.07 in the practice
+// notes of the project, computed apart from this code, for equal columns). What a second
+// cloud could hide is in the structure error, and with it the intervals hold the truth.
+func TestHiddenStructure(t *testing.T) {
+	truth := []clouds.Cloud{one(-1.2, 0.6, 12), one(1.5, 0.8, 12.1), one(0.2, 3, 11.8)}
+	p := clouds.Problem{Clouds: truth}
+	for _, l := range []atomic.Line{d2, d1} {
+		l.FErr = 0
+		w := flat(l, -60, 60, 2.5, 7.5, 0.01)
+		w.Degree = 1
+		p.Windows = append(p.Windows, w)
+	}
+	n := math.Log10(math.Pow(10, 12) + math.Pow(10, 12.1) + math.Pow(10, 11.8))
+	low, covered := 0.0, 0
+	const trials = 8
+	for k := range trials {
+		observe(t, &p, rand.New(rand.NewPCG(61, uint64(k))))
+		s := clouds.Search{Windows: p.Windows, Like: like(), V: [2]float64{-20, 20}, Max: 4}
+		got, err := s.Run()
+		if err != nil {
+			t.Fatal(err)
+		}
+		c := got.Ranges[0].Columns[0]
+		low += (c.LogN.X - n) / trials
+		if n < c.LogN.X+c.LogN.ErrUp() && n > c.LogN.X-c.LogN.ErrLo() {
+			covered++
+		}
+		t.Logf("%d clouds, log ΣN %.3f +%.3f −%.3f %s (structure %.3f), was %.3f", len(got.Clouds), c.LogN.X, c.LogN.ErrUp(), c.LogN.ErrLo(), c.LogN.Kind(), c.LogN.ErrBy(budget.Structure), n)
+	}
+	t.Logf("mean %.3f dex off; %d of %d within the interval", low, covered, trials)
+	if !(low < -0.05) {
+		t.Errorf("one cloud is off by %.3f dex only: the test tests nothing", low)
+	}
+	if covered < 3 { // binomial with 0.68: less than 3 of 8 in 1 % of cases
+		t.Errorf("%d of %d intervals hold the truth", covered, trials)
 	}
 }

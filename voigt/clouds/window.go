@@ -28,7 +28,6 @@ type window struct {
 
 	grid   *grid
 	cache  *gridCache
-	q      float64   // steps of its sub-grid
 	factor []float64 // on the sub-grid; nil: 1
 	absorb []absorber
 	cut    float64 // wings end at this optical depth
