@@ -64,7 +64,7 @@ func statusText(l atomic.Line) string {
 func lineRemarks(l atomic.Line) string {
 	var parts []string
 	if l.Level != "" && !strings.Contains(l.Name, l.Level) {
-		parts = append(parts, l.Level)
+		parts = append(parts, "level "+l.Level)
 	}
 	if l.ELow > 0 {
 		parts = append(parts, fmt.Sprintf("from %.1f cm⁻¹", l.ELow))

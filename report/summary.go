@@ -216,6 +216,9 @@ func doubletText(d measure.Doublet) string {
 	if d.Weak != "" && d.Strong != "" {
 		name = d.Weak + " against " + strings.TrimPrefix(d.Strong, d.Species+" ")
 	}
+	if d.Delta.Kind() == "none" {
+		return name + ": not compared: " + d.Refused
+	}
 	s := fmt.Sprintf("%s: Δ log N_a = %s", name, printLog(d.Delta).text())
 	if d.Refused != "" {
 		return s + "; not corrected for saturation: " + d.Refused

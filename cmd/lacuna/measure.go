@@ -101,7 +101,7 @@ var asOptions = strings.NewReplacer(
 	`medium = "air" or "vacuum"`, "--medium air or --medium vacuum", `medium = "vacuum"`, "--medium vacuum",
 	`frame = "topocentric", "heliocentric" or "barycentric"`, "--frame topocentric, heliocentric or barycentric",
 	"correction = km/s", "--correction KM/S,", "unit and medium by hand: unit, medium", "unit and medium by hand: --unit, --medium",
-	`unit = "Angstrom", "nm", "um", …`, "--unit Angstrom, nm or um", `layout = "linear"`, "--layout linear", `layout = "orders"`, "--layout orders", "columns = {wave = …, flux = …}", "--columns WAVE,FLUX", `layout = "log10", or unit`, "--layout log10, or --unit",
+	`unit = "Angstrom", "nm", "um", …`, "--unit Angstrom, nm or um", `unit = "Angstrom"`, "--unit Angstrom", `layout = "linear"`, "--layout linear", `layout = "orders"`, "--layout orders", "columns = {wave = …, flux = …}", "--columns WAVE,FLUX", `layout = "log10", or unit`, "--layout log10, or --unit",
 	"give ra and dec", "give ra and dec in a survey file",
 )
 

@@ -214,7 +214,7 @@ func TestMeasureFaultySpectra(t *testing.T) {
 	args := func(path string, more ...string) []string {
 		return append([]string{"measure", path, "--line", "Na I 5889.95", "--window", "-20,20"}, more...)
 	}
-	say := []string{"--medium", "air", "--frame", "heliocentric"}
+	say := []string{"--unit", "Angstrom", "--medium", "air", "--frame", "heliocentric"}
 
 	mistake(t, 2, []string{"cut.fits: HDU 1", "truncated", "fetch the file again"}, args(write(t, dir, "cut.fits", whole[:20000]))...)
 	mistake(t, 2, []string{"words.fits"}, args(write(t, dir, "words.fits", "This is not a spectrum at all.\n"))...)
@@ -224,14 +224,15 @@ func TestMeasureFaultySpectra(t *testing.T) {
 	mistake(t, 2, []string{dir, "not a file"}, args(dir)...)
 
 	text := sheet("good.txt", "# wave flux err\n", good)
-	mistake(t, 2, []string{"good.txt", "--medium air or --medium vacuum"}, args(text)...)
-	mistake(t, 2, []string{"good.txt", "--frame topocentric, heliocentric or barycentric"}, args(text, "--medium", "air")...)
+	mistake(t, 2, []string{"good.txt", "without a unit", "--unit Angstrom"}, args(text)...)
+	mistake(t, 2, []string{"good.txt", "--medium air or --medium vacuum"}, args(text, say[:2]...)...)
+	mistake(t, 2, []string{"good.txt", "--frame topocentric, heliocentric or barycentric"}, args(text, say[:4]...)...)
 	w := measured(t, args(text, say...)[1:]...).Result.Widths[0]
 	// ∫ 0.5 exp(−(Δλ/0.05 Å)²) dλ = 0.5·0.05·√π = 44.3 mÅ.
 	if want := 0.5 * 0.05 * math.SqrtPi; !w.Detected || !(math.Abs(w.W.X-want) < 3*w.W.Err()) || !(w.W.Err() < 0.003) {
 		t.Errorf("W = %.4f ± %.4f Å, want %.4f", w.W.X, w.W.Err(), want)
 	}
-	mistake(t, 2, []string{"good.txt", "LSRK", "ra and dec in a survey file"}, args(text, "--medium", "air", "--frame", "heliocentric", "--to", "LSRK")...)
+	mistake(t, 2, []string{"good.txt", "LSRK", "ra and dec in a survey file"}, args(text, append(say, "--to", "LSRK")...)...)
 
 	none := measured(t, args(sheet("none.txt", "", func(i int, w float64) string {
 		return fmt.Sprintf("%.4f %.5f 0", w, flux(i, w))
