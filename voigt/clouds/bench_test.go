@@ -94,3 +94,17 @@ func BenchmarkNew(b *testing.B) {
 		}
 	}
 }
+
+// BenchmarkBatch fits 5 clouds on as many goroutines as there are cores, each with a
+// fitter of its own.
+func BenchmarkBatch(b *testing.B) {
+	b.RunParallel(func(pb *testing.PB) {
+		f, x := crowd(b, 5, 2, 1)
+		for pb.Next() {
+			if _, err := f.FitFrom(x); err != nil {
+				b.Error(err)
+				return
+			}
+		}
+	})
+}

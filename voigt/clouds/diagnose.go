@@ -183,6 +183,9 @@ func (r *Result) note(format string, a ...any) {
 // depths fills the central optical depths of the strongest and the weakest line of a
 // comp, hyperfine and isotopic structure included.
 func (f *Fitter) depths(d *comp, out *SpeciesFit) {
+	if !(d.N > 0) {
+		return
+	}
 	out.Weakest = math.Inf(1)
 	for _, w := range f.wins {
 		for _, b := range w.absorb {

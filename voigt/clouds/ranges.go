@@ -1,6 +1,7 @@
 package clouds
 
 import (
+	"encoding/json"
 	"math"
 	"slices"
 
@@ -33,6 +34,39 @@ type RangeColumn struct {
 type RangeWidth struct {
 	Line string        `json:"line"`
 	W    budget.Number `json:"w"` // Å
+}
+
+// rangeJSON is a Range as JSON has it: null for an open end.
+type rangeJSON struct {
+	V       [2]*float64   `json:"v"`
+	Columns []RangeColumn `json:"columns"`
+	Widths  []RangeWidth  `json:"widths"`
+}
+
+// MarshalJSON writes open ends as null.
+func (r Range) MarshalJSON() ([]byte, error) {
+	out := rangeJSON{Columns: r.Columns, Widths: r.Widths}
+	for i := range r.V {
+		if finite(r.V[i]) {
+			out.V[i] = &r.V[i]
+		}
+	}
+	return json.Marshal(out)
+}
+
+// UnmarshalJSON reads what MarshalJSON writes.
+func (r *Range) UnmarshalJSON(b []byte) error {
+	var in rangeJSON
+	if err := json.Unmarshal(b, &in); err != nil {
+		return err
+	}
+	*r = Range{V: everything, Columns: in.Columns, Widths: in.Widths}
+	for i, v := range in.V {
+		if v != nil {
+			r.V[i] = *v
+		}
+	}
+	return nil
 }
 
 // Ranges works out the ranges at a result of this fitter; a limit of ±Inf is open.
