@@ -30,6 +30,9 @@ type Fit struct {
 	by origins
 }
 
+// MostClouds is how many clouds one fit may have.
+const MostClouds = 40
+
 // A FitCloud is where one cloud starts, and what is known of it.
 type FitCloud struct {
 	Name       string     `json:"name" toml:"name"`
@@ -147,6 +150,8 @@ func (l *loader) checkFit(x *Sightline, f *Fit, where string, lines []atomic.Lin
 	switch {
 	case f.Auto && len(f.Clouds) > 0:
 		l.bad(where, "keep auto = true or the clouds", "auto finds the clouds, yet %d are given", len(f.Clouds))
+	case len(f.Clouds) > MostClouds:
+		l.bad(where, "fit fewer, or lines of another range apart", "%d clouds, %d at most", len(f.Clouds), MostClouds)
 	case !f.Auto && len(f.Clouds) == 0:
 		l.bad(where, "add [[sightline.fit.cloud]] with v = …, or auto = true", "no cloud to start from")
 	}

@@ -102,6 +102,7 @@ func TestFitMistakes(t *testing.T) {
 		{"line twice", ok + "[[sightline.fit]]\nlines=[\"Na D2\", \"Na I 5889.95\"]\n" + cloud, []string{"lines 2: Na I 5889.95 is there twice"}},
 		{"no cloud", ok + fit, []string{"fit 1: no cloud to start from; add [[sightline.fit.cloud]] with v = …, or auto = true"}},
 		{"auto with clouds", ok + fit + "auto=true\n" + cloud, []string{"auto finds the clouds, yet 1 are given"}},
+		{"too many clouds", ok + fit + strings.Repeat(cloud, 41), []string{"fit 1: 41 clouds, 40 at most"}},
 		{"no v", ok + fit + "[[sightline.fit.cloud]]\nb = 1\n", []string{"cloud 1: v: missing; add v = "}},
 		{"unknown key", ok + fit + cloud + "logN = 12\n", []string{"fit 1: cloud 1: logN: unknown key"}},
 		{"key of a fit", ok + fit + cloud + "auto = true\n", []string{"auto: unknown key; this key belongs to [sightline.fit]"}},

@@ -99,7 +99,7 @@ func cloudRemarks(c clouds.CloudFit, s clouds.SpeciesFit) string {
 		parts = append(parts, strings.ReplaceAll(strings.Join(f, " and "), "logN", "log N")+" fixed")
 	}
 	if c.T != nil && c.Turb != nil {
-		parts = append(parts, fmt.Sprintf("T %s K, turbulence %s km/s", paramText(*c.T, 0), paramText(*c.Turb, 2)))
+		parts = append(parts, "T "+paramText(*c.T, 0, " K")+", turbulence "+paramText(*c.Turb, 2, " km/s"))
 	}
 	parts = append(parts, ((s.V.Flag | s.B.Flag | s.LogN.Flag) &^ (budget.Upper | budget.Lower | budget.Interval)).Words()...)
 	if s.LogN.Is(budget.Upper) {
@@ -114,7 +114,7 @@ func cloudRemarks(c clouds.CloudFit, s clouds.SpeciesFit) string {
 	return strings.Join(parts, "; ")
 }
 
-func paramText(p clouds.Param, decimals int) string {
+func paramText(p clouds.Param, decimals int, unit string) string {
 	if p.Undetermined {
 		return "not constrained"
 	}
@@ -122,7 +122,7 @@ func paramText(p clouds.Param, decimals int) string {
 	if p.Err > 0 {
 		n.Shifts = []budget.Shift{{Cause: budget.Photon, D: p.Err}}
 	}
-	return printNumber(n, 1, decimals).text()
+	return printNumber(n, 1, decimals).text() + unit
 }
 
 // linearText is a column as N ± σ, in the power of ten of its error.

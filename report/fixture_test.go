@@ -147,6 +147,7 @@ func lantern1() survey.Record {
 		Spectra: []survey.SpectrumInfo{{File: "lantern-1.fits", Layout: "linear image", Orders: 1, Medium: "vacuum", MediumBy: "survey file",
 			Frame: "TOPOCENT", FrameBy: "header", R: 65000, RBy: "survey file", Shifts: []frame.Applied{{Keyword: "VHELIO", To: frame.Heliocent, V: 13.9}}}},
 		Widths: ws, Columns: cols, Adopted: []abundance.Column{ca, na, ch, ki},
+		Fits: []survey.Fit{naFit()}, Verdicts: naVerdicts(),
 		Doublets: []measure.Doublet{{Species: "Na I", Strong: naD2.name, Weak: naD1.name,
 			Delta: dex(0.21, 0.02), Corrected: budget.Number{X: math.NaN()}, Refused: "difference 0.21 dex exceeds 0.15"}},
 		Hydrogen: h,
@@ -210,5 +211,5 @@ func everything() []survey.Record {
 }
 
 func tablesOf(rs []survey.Record) map[string]*table.Table {
-	return map[string]*table.Table{"widths": Widths(rs), "columns": Columns(rs), "depletions": Depletions(rs), "growth": Growth(rs)}
+	return map[string]*table.Table{"widths": Widths(rs), "columns": Columns(rs), "depletions": Depletions(rs), "growth": Growth(rs), "clouds": Clouds(rs)}
 }

@@ -75,5 +75,5 @@ func hard() []survey.Record {
 		}
 		ds = append(ds, d)
 	}
-	return []survey.Record{r, single, stuck, {Name: "Lantern 10", Status: "done", Result: survey.Result{Widths: many, Depletions: ds}}, {}}
+	return []survey.Record{r, single, stuck, {Name: "Lantern 10", Status: "done", Result: survey.Result{Widths: many, Depletions: ds, Fits: hardFits()}}, {}}
 }

@@ -50,6 +50,10 @@ func texts() map[string]func(o Options) ([]byte, error) {
 		}
 	}
 	return map[string]func(o Options) ([]byte, error){
+		"fit": write(func(b *bytes.Buffer, o Options) error {
+			r := lantern1()
+			return FitText(b, r, o)
+		}),
 		"summary": write(func(b *bytes.Buffer, o Options) error { return Summary(b, everything(), o) }),
 		"width":   write(func(b *bytes.Buffer, o Options) error { return WidthText(b, r.Result.Widths[1], frame.Heliocent, o) }),
 		"limit":   write(func(b *bytes.Buffer, o Options) error { return WidthText(b, r.Result.Widths[4], frame.Heliocent, o) }),

@@ -44,11 +44,11 @@ Example: lacuna fit lantern1_blue.fits --line "Ca II K" --window -40,20 --clouds
 }
 
 func fitAction(c *cli.Context) error {
-	f, err := fitOf(c)
+	a, err := ask(c)
 	if err != nil {
 		return err
 	}
-	a, err := ask(c)
+	f, err := fitOf(c)
 	if err != nil {
 		return err
 	}
@@ -125,6 +125,9 @@ func fitOf(c *cli.Context) (config.Fit, error) {
 	}
 	if f.Auto {
 		return f, nil
+	}
+	if n := strings.Count(c.String("clouds"), ",") + 1; n > config.MostClouds {
+		return f, usage(c, "--clouds gives %d velocities; %d clouds at most", n, config.MostClouds)
 	}
 	for i, text := range strings.Split(c.String("clouds"), ",") {
 		v, err := parseNumber(text)
