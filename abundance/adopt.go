@@ -30,7 +30,8 @@ const disagree = 2
 //     non-detections are averaged as N ± σ first; both together an interval.
 //
 // A growth curve or a doublet correction that lies more than 2σ below a lower limit
-// is refused: one cloud was not enough.
+// is refused: one cloud was not enough. So is a growth curve with every line on its
+// flat part.
 //
 // Every other column is compared with the adopted one. Where one differs by more
 // than 2σ of the difference, half the difference joins the error (cause
@@ -117,6 +118,9 @@ func byRule(cols []Column) Column {
 func refuted(c Column, cols []Column) string {
 	if c.Method != MethodGrowth && c.Method != MethodDoublet {
 		return ""
+	}
+	if c.Method == MethodGrowth && c.LogN.Is(budget.Saturated) {
+		return fmt.Sprintf("; %s, %s, is refused: every line is on its flat part, where N rests on one cloud being enough", named(c), show(c.LogN))
 	}
 	for _, l := range cols {
 		if l.Method == c.Method || !l.LogN.Is(budget.Lower) {

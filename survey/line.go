@@ -106,7 +106,7 @@ func notCovered(lights []Light, t LineTask) error {
 			continue
 		}
 		w := l.Seg.Wave
-		have = append(have, fmt.Sprintf("%s %.2f to %.2f", l.Seg.Label, w[0], w[len(w)-1]))
+		have = append(have, fmt.Sprintf("%s, %.2f to %.2f Å", l.Seg.Label, w[0], w[len(w)-1]))
 	}
 	if len(have) > 6 {
 		have = append(have[:6], "…")
@@ -122,7 +122,7 @@ func notCovered(lights []Light, t LineTask) error {
 			what = fmt.Sprintf("there is no order %d", *t.Order)
 		}
 	}
-	return oops.Input("", t.Line.Name, what, "there is "+strings.Join(have, ", "))
+	return oops.Input("", t.Line.Name, what, "the data hold "+strings.Join(have, "; "))
 }
 
 // The continuum of a line reaches to continuumWidths line widths and

@@ -30,6 +30,9 @@ func each(ctx context.Context, n, workers int, do, done func(k int)) error {
 	}
 feed:
 	for k := range n {
+		if ctx.Err() != nil {
+			break
+		}
 		select {
 		case next <- k:
 		case <-ctx.Done():
