@@ -55,7 +55,7 @@
 // # Number of clouds
 //
 // With a number that was chosen from the data, errors of single clouds hold only if
-// the number is right (Leeb & Pötscher 2005, Econometric Theory 21, 21); Result.Conditional
+// the number is right (Leeb & Pötscher 2005); Result.Conditional
 // says so. What stays are sums over ranges of velocity (Found.Ranges), with an error of
 // their own for the structure: the spread over all solutions within ΔBIC < 6, and what a
 // further cloud could hide, by the profile likelihood of the column with one more. The

@@ -87,7 +87,7 @@ func (f *Fitter) round(s *state, lo, hi []float64) error {
 	if f.most > 0 {
 		o.MaxIterations = f.most
 	}
-	sol, err := lsq.Fit(f, s.x, lo, hi, o, &f.ws)
+	sol, err := lsq.Fit((*objective)(f), s.x, lo, hi, o, &f.ws)
 	if err != nil {
 		for _, w := range f.wins {
 			if w.lost {

@@ -95,7 +95,7 @@ func TestJacobian(t *testing.T) {
 	}
 	m := f.rows
 	r, jac := make([]float64, m), mat.NewDense(m, n, nil)
-	f.Eval(x, r, jac) // sets the linear parameters
+	(*objective)(f).Eval(x, r, jac) // sets the linear parameters
 	design := [][]float64{}
 	for _, w := range f.wins {
 		w.absorption(f.comps, x, true)
@@ -167,7 +167,7 @@ func TestProjectedJacobian(t *testing.T) {
 	}
 	n, m := len(x), f.rows
 	r, jac := make([]float64, m), mat.NewDense(m, n, nil)
-	f.Eval(x, r, jac)
+	(*objective)(f).Eval(x, r, jac)
 	offset := 0.0 // the priors that x does not meet
 	for _, p := range f.priors {
 		d := (p.value.at(x) - p.mean) / p.sigma
@@ -182,9 +182,9 @@ func TestProjectedJacobian(t *testing.T) {
 		rp, rm := make([]float64, m), make([]float64, m)
 		y := append([]float64(nil), x...)
 		y[j] += h
-		f.Eval(y, rp, scratch)
+		(*objective)(f).Eval(y, rp, scratch)
 		y[j] -= 2 * h
-		f.Eval(y, rm, scratch)
+		(*objective)(f).Eval(y, rm, scratch)
 		// Q turns with x: compare what does not depend on it, ∂χ²/∂x and the norm
 		grad, norm := 0.0, 0.0
 		for i := range rp {
@@ -200,7 +200,7 @@ func TestProjectedJacobian(t *testing.T) {
 			t.Errorf("%s: curvature %.6g, differences %.6g", name, norm, curve)
 		}
 	}
-	if a := testing.AllocsPerRun(20, func() { f.Eval(x, r, jac) }); a != 0 {
+	if a := testing.AllocsPerRun(20, func() { (*objective)(f).Eval(x, r, jac) }); a != 0 {
 		t.Errorf("%g allocations an evaluation", a)
 	}
 }

@@ -29,8 +29,8 @@ type RangeColumn struct {
 	LogN    budget.Number `json:"log_n"`
 }
 
-// A RangeWidth is the equivalent width of one line in a range, W = ∫ 1 − e^{−τ} dλ, before
-// the instrument, from −∞ to ∞ where the range is.
+// A RangeWidth is the equivalent width of one line in a range, W = ∫ 1 − e^{−τ} dλ over
+// it, as it was before the instrument.
 type RangeWidth struct {
 	Line string        `json:"line"`
 	W    budget.Number `json:"w"` // Å
