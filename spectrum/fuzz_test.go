@@ -95,6 +95,17 @@ func FuzzReadFITS(f *testing.F) {
 	}
 	fits.WriteTable(&b, nil, "SPEC", cols, nil)
 	f.Add(bytes.Clone(b.Bytes()))
+	// A lookup axis, orders with polynomials, multispec, wavelengths in an image.
+	lookup := rawImage([]int{3}, func(i int) float64 { return 1 }, "CTYPE1  = 'AWAV-TAB'", "CUNIT1  = 'nm'", "CRVAL1  = 1", "CDELT1  = 0.5", "PS1_0   = 'T'", "PS1_1   = 'x'", "PS1_2   = 'i'")
+	b.Reset()
+	fits.WriteTable(&b, nil, "T", []fits.Vector{{Name: "x", Type: 'D', Rows: [][]float64{{500, 501}}}, {Name: "i", Type: 'D', Rows: [][]float64{{1, 2}}}}, nil)
+	f.Add(append(lookup, b.Bytes()[2880:]...))
+	f.Add(e2dsImage("ESO DRS", 2, nil))
+	f.Add(koaImage("4050 0.1 0 0"))
+	f.Add(multispecImage(5, []string{"1 10 2 5000 0.5 5 0 1 2 1 0 4 1 1 5 5000 5002", "2 11 1 3.7 1e-5 5 0 1 2"}))
+	wave := rawImage([]int{3}, func(i int) float64 { return 5000 + float64(i) }, "PCOUNT  = 0", "GCOUNT  = 1", "EXTNAME = 'WAVE'")
+	copy(wave, "XTENSION= 'IMAGE   '          ")
+	f.Add(append(rawImage([]int{3}, func(i int) float64 { return 1 }, "EXTNAME = 'FLUX'"), wave...))
 	shared(f, "samples/*.fits", "bad/*.fits")
 	f.Fuzz(func(t *testing.T, in []byte) {
 		if !bytes.HasPrefix(in, []byte("SIMPLE  =")) {

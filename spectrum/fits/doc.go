@@ -8,6 +8,9 @@
 // wanted. Scaling, null values, unsigned integers and logical values are applied
 // here, because the library does not.
 //
+// Tile-compressed images are images here like any other: only the tiles of the
+// line that is wanted are unpacked.
+//
 // Every error names the file, the HDU (counted from 0, with its EXTNAME) and the
 // keyword, and says what was found and what to do. Numbers come out as float64:
 // 64-bit integers beyond 2⁵³ lose their last digits.
