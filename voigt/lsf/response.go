@@ -19,9 +19,11 @@ import (
 // the line spread function. The rows of Weight add up to 1, and all share one
 // block of memory.
 type Response struct {
-	Sub    []float64   // wavelengths of the sub-grid (Å), even steps in log λ
+	Sub    []float64   // wavelengths of the sub-grid (Å), ascending; from New in even steps of log λ
 	First  []int       // of each pixel: index into Sub of its first weight
 	Weight [][]float64 // of each pixel
+
+	step []float64 // Å, what each point of Sub stands for in a sum
 }
 
 // More sub-grid points than this are taken for a mistake in b or in the width.
@@ -102,10 +104,12 @@ func New(edges []float64, p Profile, bmin, q float64) (Response, error) {
 		First:  make([]int, len(edges)-1),
 		Weight: make([][]float64, len(edges)-1),
 	}
+	r.step = make([]float64, n)
 	for j := range r.Sub {
 		r.Sub[j] = lo * math.Exp(float64(j)*step)
+		r.step[j] = r.Sub[j] * step
 	}
-	return r, r.weigh(edges, p, step)
+	return r, r.weigh(edges, p)
 }
 
 func checkGrid(edges []float64, bmin, q float64) error {
@@ -136,7 +140,7 @@ func place(edges []float64) string {
 
 // weigh fills First and Weight. Of each edge it keeps P_j on the band of j where
 // it is neither 0 nor 1; neighbours share an edge.
-func (r *Response) weigh(edges []float64, p Profile, step float64) error {
+func (r *Response) weigh(edges []float64, p Profile) error {
 	var left, right band
 	left.set(r.Sub, edges[0], p)
 	sizes := make([]int, len(r.First))
@@ -146,7 +150,7 @@ func (r *Response) weigh(edges []float64, p Profile, step float64) error {
 		first, last := left.first, max(left.first+len(left.p), right.first+len(right.p))
 		width, sum, from := edges[i+1]-edges[i], 0.0, len(all)
 		for j := first; j < last; j++ {
-			w := (right.at(j) - left.at(j)) * r.Sub[j] * step / width
+			w := (right.at(j) - left.at(j)) * r.step[j] / width
 			sum += w
 			all = append(all, w)
 		}

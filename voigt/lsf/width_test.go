@@ -50,3 +50,57 @@ func TestScaled(t *testing.T) {
 		t.Error("a width scaled by NaN is accepted")
 	}
 }
+
+// An uneven sub-grid that crowds about a narrow line gives the flux of a fine even one.
+func TestOn(t *testing.T) {
+	edges := make([]float64, 61)
+	for i := range edges {
+		edges[i] = 5000 + 0.04*float64(i)
+	}
+	gauss := lsf.Sum{{Weight: 1, FWHM: lsf.Constant(0.12)}}
+	line := func(w float64) float64 { // τ₀ = 3, b = 0.01 Å
+		x := (w - 5001.213) / 0.01
+		return math.Exp(-3 * math.Exp(-x*x))
+	}
+	flux := func(r lsf.Response) []float64 {
+		tr, f := make([]float64, len(r.Sub)), make([]float64, len(r.First))
+		for j, w := range r.Sub {
+			tr[j] = line(w)
+		}
+		r.Apply(f, tr)
+		return f
+	}
+	fine, err := lsf.Gaussian(edges, lsf.Constant(0.12), 0.6, 6)
+	if err != nil {
+		t.Fatal(err)
+	}
+	// s(λ) = (λ − λ₀)/0.025 Å + (0.05 Å/0.0025 Å) atan((λ − λ₀)/0.05 Å), inverted by Newton
+	const centre, far, near, zone = 5001.213, 0.025, 0.0025, 0.05
+	var sub, step []float64
+	x := -2.2
+	for s := -122.0; x < 2.2; s++ {
+		for range 50 {
+			at := x/far + zone/near*math.Atan(x/zone)
+			slope := 1/far + 1/near/(1+x*x/zone/zone)
+			x -= (at - s) / slope
+		}
+		sub = append(sub, centre+x)
+		step = append(step, 1/(1/far+1/near/(1+x*x/zone/zone)))
+	}
+	uneven, err := lsf.On(edges, gauss, sub, step)
+	if err != nil {
+		t.Fatal(err)
+	}
+	f, g := flux(uneven), flux(fine)
+	for i := range f {
+		if d := math.Abs(f[i] - g[i]); !(d <= 1e-8) {
+			t.Errorf("pixel %d: %.10f, even and fine %.10f", i, f[i], g[i])
+		}
+	}
+	if len(sub) > len(fine.Sub)/2 {
+		t.Errorf("%d uneven points, %d even ones", len(sub), len(fine.Sub))
+	}
+	if _, err := lsf.On(edges, gauss, sub[:100], step[:100]); err == nil {
+		t.Error("a sub-grid that ends too early is accepted")
+	}
+}
