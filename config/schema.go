@@ -38,7 +38,7 @@ var schema = []KeyDoc{
 	{Table: "sightline", Name: "limit_width", Type: Number, Unit: "km/s", Default: `0.0`, Range: "[0, 10000]", Common: true, Meaning: "Width over which a limit is taken; 0 for twice the observed full width at half maximum."},
 	{Table: "sightline", Name: "b_atom", Type: Number, Unit: "km/s", Default: `2.0`, Range: "(0, 1000]", Common: true, Meaning: "Doppler parameter assumed for the limit of an atom's line where nothing was detected."},
 	{Table: "sightline", Name: "b_molecule", Type: Number, Unit: "km/s", Default: `1.0`, Range: "(0, 1000]", Common: true, Meaning: "The same for molecules."},
-	{Table: "sightline", Name: "b_range", Type: Pair, Unit: "km/s", Default: `[0.3, 30.0]`, Range: "(0, 1000]", Common: true, Meaning: "Doppler parameters that the curve of growth may try."},
+	{Table: "sightline", Name: "b_range", Type: Pair, Unit: "km/s", Default: `[0.3, 30.0]`, Range: "(0, 1000]", Common: true, Meaning: "Doppler parameters that the curve of growth and automatic fits may try."},
 	{Table: "sightline", Name: "zero_level", Type: Table, Default: `{level = 0.0, err = 0.01}`, Common: true, Meaning: "Where zero flux lies, as a part of the continuum: used where no black line core measures it."},
 	{Table: "sightline", Name: "max_degree", Type: Integer, Default: `3`, Range: "[0, 5]", Common: true, Meaning: "Highest degree of a continuum whose degree is found automatically."},
 	{Table: "sightline", Name: "spectrum", Type: Tables, Common: true, Meaning: "The spectra of the star. [defaults.spectrum], one table, is for all spectra."},

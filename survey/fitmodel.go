@@ -114,16 +114,19 @@ func par(p config.Parameter, to string) clouds.Par {
 	return out
 }
 
-// like is what a cloud of an automatic fit looks like.
-func like(f config.Fit, species []string) clouds.Cloud {
-	out := clouds.Cloud{Thermal: f.Thermal}
+// like is what a cloud of an automatic fit looks like. Its b ends at a quarter of the
+// range of velocities: wider ones cannot be told from the continuum.
+func like(f config.Fit, species []string, velocities, bs [2]float64) clouds.Cloud {
+	b := bs[0]
+	widest := max(min(bs[1], (velocities[1]-velocities[0])/4), 2*b)
+	out := clouds.Cloud{Thermal: f.Thermal, B: clouds.Start(b).Within(b, widest)}
 	if f.Thermal {
-		out.T, out.Turb = clouds.Start(100), clouds.Start(1)
+		out.T, out.Turb = clouds.Start(100), clouds.Start(1).Within(0, widest)
 	}
 	for _, s := range species {
 		sp := clouds.Species{Carrier: s}
 		if !f.ShareB {
-			sp.B = pointer(clouds.Start(1))
+			sp.B = pointer(clouds.Start(b).Within(b, widest))
 		}
 		if slices.Contains(f.Offset, s) {
 			sp.V = pointer(offset(s))
