@@ -17,7 +17,7 @@ kept for all spectra (best of several, and mean) and with a new one for each, th
 how well χ² and covariance agree. Times are CPU times of the process: other work on the
 machine slows both sides, but is not counted.
 
-"lacuna grid" is the fit with the program's own sub-grid (box of the pixel integrated
+"own grid" is the fit with the program's own sub-grid (box of the pixel integrated
 exactly, steps after the narrowest cloud), which is finer than the script's.
 """
 import json
@@ -132,7 +132,7 @@ def main():
                 scipy_ms[k].append(statistics.mean(times))
                 ours[k].append([results[j] for j in range(i - len(l), i)])
     print("ms a fit, mean over spectra (median of %d alternating runs); ratio to SciPy's mean" % runs)
-    print("%2s %9s | %16s %16s %16s | %16s %16s | %9s %9s" % ("K", "SciPy", "best of 5", "mean", "new fitter", "best, lacuna grid", "and continuum", "chi2", "errors"))
+    print("%2s %9s | %16s %16s %16s | %16s %16s | %9s %9s" % ("K", "SciPy", "best of 5", "mean", "new fitter", "best, own grid", "and continuum", "chi2", "errors"))
     for k in cases:
         s = statistics.median(scipy_ms[k])
         cells = []
