@@ -120,7 +120,7 @@ func hardFits() []survey.Fit {
 	nothing := clouds.SpeciesFit{Carrier: "Ca II", V: budget.Number{X: math.NaN()}, B: budget.Number{X: math.NaN()}, LogN: budget.Number{X: math.NaN()}, N: budget.Number{X: math.NaN()}, Tau0: math.NaN()}
 	open := dex(12, 0.3)
 	open.Up, open.Lo = math.Inf(1), 0.2
-	many := survey.Fit{Name: "Fe I " + fmt.Sprint("many lines <&> α^{2} 星"), Result: clouds.Result{
+	many := survey.Fit{Name: "Fe I many lines <&> α^{2} 星", Result: clouds.Result{
 		Clouds: []clouds.CloudFit{{V: dex(0, 1), Species: []clouds.SpeciesFit{speciesFit("Fe I", dex(0, 1), dex(2, 1), open, 0.5)}}},
 		Totals: []clouds.Total{{Carrier: "Fe I", N: budget.Pow10(dex(12, 0.3)), LogN: open}}}}
 	for i := range 27 {

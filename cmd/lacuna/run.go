@@ -20,10 +20,11 @@ func runCommand() *cli.Command {
 		Name: "run", Usage: "the whole chain for every sightline of a survey file",
 		ArgsUsage: "SURVEY.toml [--out DIR] [--only NAME]",
 		Description: `Reads each sightline's spectra, puts them on vacuum wavelengths and the survey's
-velocity frame, places the continuum, measures every line, and turns widths into columns
-(weak line, apparent optical depth, curve of growth), sums by species and depletions.
-The results folder gets journal.jsonl (everything), widths, columns, growth and depletions
-as ECSV, figures as SVG, and manifest.json. Sightlines whose inputs have not changed since
+velocity frame, places the continuum, measures every line, fits clouds where the survey
+asks for them, and turns all that into columns (weak line, apparent optical depth, curve of
+growth, fit), sums by species and depletions. The results folder gets journal.jsonl
+(everything), widths, clouds, columns, growth and depletions as ECSV, figures as SVG, and
+manifest.json. Sightlines whose inputs have not changed since
 the last run are taken from the journal.
 
 Example: lacuna run survey.toml --out results --only "Lantern 1"`,
