@@ -15,8 +15,9 @@ import (
 	"lacuna/internal/oops"
 )
 
-// maxText is the largest text file that is read, in bytes.
-const maxText = 1 << 30
+// maxText is the largest text file that is read, in bytes: three million pixels,
+// for which reading takes about ten times as much memory.
+const maxText = 100 << 20
 
 // A sheet is a text table: cells of each row, with the line it stood on.
 type sheet struct {
