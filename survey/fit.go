@@ -172,9 +172,11 @@ func (p *Pieces) fit(f config.Fit, o FitOptions) (Fit, error) {
 		}
 	}
 	if len(cs) > 0 {
-		if fitter, err = refine(&out.Result, fitter, cs, ws, held, o); err != nil {
+		var words []string
+		if fitter, words, err = refine(&out.Result, fitter, cs, ws, held, o); err != nil {
 			return out, err
 		}
+		out.Warnings = append(out.Warnings, words...)
 		structure(&out.Result, totals)
 	}
 	p.flag(&out, f)

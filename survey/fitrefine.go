@@ -1,6 +1,7 @@
 package survey
 
 import (
+	"fmt"
 	"math"
 	"slices"
 
@@ -66,19 +67,20 @@ func every(cs []clouds.Cloud, c clouds.Cloud) bool {
 
 // refine makes the columns of undetected species linear, with limits by Δχ², and the
 // errors of the others those of their profile likelihood where a parabola is a poor
-// guide.
-func refine(r *clouds.Result, f *clouds.Fitter, cs []clouds.Cloud, ws []clouds.Window, held []string, o FitOptions) (*clouds.Fitter, error) {
+// guide. Where the likelihood cannot be followed, as when clouds hide behind each other,
+// the parabola's errors stay, and words say so.
+func refine(r *clouds.Result, f *clouds.Fitter, cs []clouds.Cloud, ws []clouds.Window, held []string, o FitOptions) (*clouds.Fitter, []string, error) {
 	sigma := o.Sigma
 	conditional := r.Conditional
 	notes := r.Notes
 	if weak(cs, *r, held) {
 		g, err := clouds.New(clouds.Problem{Windows: ws, Clouds: cs, Shared: f.SharedAt(r.X)}, o.grid)
 		if err != nil {
-			return nil, err
+			return nil, nil, err
 		}
 		s, err := g.Fit()
 		if err != nil {
-			return nil, err
+			return nil, nil, err
 		}
 		if s.Converged { // else what was there tells more
 			if conditional {
@@ -88,6 +90,7 @@ func refine(r *clouds.Result, f *clouds.Fitter, cs []clouds.Cloud, ws []clouds.W
 			*r, f = s, g
 		}
 	}
+	var words []string
 	for i := range r.Clouds {
 		for j := range r.Clouds[i].Species {
 			s := &r.Clouds[i].Species[j]
@@ -96,7 +99,8 @@ func refine(r *clouds.Result, f *clouds.Fitter, cs []clouds.Cloud, ws []clouds.W
 			}
 			n, err := f.UpperLimit(*r, r.Clouds[i].Name, s.Carrier, sigma)
 			if err != nil {
-				return nil, err
+				words = append(words, fmt.Sprintf("%s of %s: the limit is N + %gσ, not from the likelihood (%v)", s.Carrier, r.Clouds[i].Name, sigma, err))
+				continue
 			}
 			if !math.IsNaN(n.X) {
 				s.LogN = budget.Log10(n)
@@ -104,9 +108,12 @@ func refine(r *clouds.Result, f *clouds.Fitter, cs []clouds.Cloud, ws []clouds.W
 		}
 	}
 	if err := f.Asymmetric(r); err != nil {
-		return nil, err
+		words = append(words, fmt.Sprintf("errors of columns are symmetric, though the likelihood is not: it cannot be followed (%v)", err))
 	}
-	return f, boundB(r, f, sigma)
+	if err := boundB(r, f, sigma); err != nil {
+		words = append(words, fmt.Sprintf("limits of b do not come from the likelihood: it cannot be followed (%v)", err))
+	}
+	return f, words, nil
 }
 
 // boundB gives limits of b their likelihood (Δχ² = sigma²) where the fit stopped at the

@@ -96,7 +96,11 @@ func (o *Fit) warn(f config.Fit, ks []*patch) {
 		say("the fit did not converge: %s", r.Stop)
 	}
 	if r.DOF > 0 && chance(r.Chi2, r.DOF) < leastGoodness {
-		say("the clouds do not explain the lines: χ² = %.1f for %d degrees of freedom", r.Chi2, r.DOF)
+		more := ""
+		if r.Chi2 > worst*float64(r.DOF) {
+			more = ": its columns are not used"
+		}
+		say("the clouds do not explain the lines: χ² = %.1f for %d degrees of freedom%s", r.Chi2, r.DOF, more)
 	}
 	if z := r.Whiteness.WatsonZ; math.Abs(z) > 4 {
 		say("residuals of neighbouring pixels are alike (Durbin–Watson %.2f, %.1fσ from chance)", r.Whiteness.DurbinWatson, math.Abs(z))
@@ -111,6 +115,11 @@ func (o *Fit) warn(f config.Fit, ks []*patch) {
 		}
 		if narrow {
 			say("%s is narrower than the instrument resolves: its b is an upper limit", c.Name)
+		}
+	}
+	for _, t := range r.Totals {
+		if vaguely(t.LogN) {
+			say("the column of %s is hardly constrained and not used: add a weaker line, or bound b", t.Carrier)
 		}
 	}
 	for _, d := range r.Degenerate {
@@ -160,13 +169,20 @@ func (c *chain) fits(res *Result, p *Pieces, s config.Sightline) error {
 	return nil
 }
 
-// worst is the χ² per degree of freedom up to which a fit gives columns.
-const worst = 3
+const (
+	worst = 2   // χ² per degree of freedom up to which a fit gives columns
+	vague = 0.5 // dex, error above which a total is no column
+)
+
+// vaguely reports whether a total is hardly constrained.
+func vaguely(n budget.Number) bool {
+	return n.Kind() == "value" && math.Min(n.ErrUp(), n.ErrLo()) > vague
+}
 
 // Columns are the totals of a fit over its clouds. Where χ² is larger than chance
 // allows, the clouds are not all there is: the errors are then scaled by √(χ²/ν)
-// (common practice, no source), and beyond χ²/ν = 3, or without convergence, there are
-// none.
+// (common practice, no source), and beyond χ²/ν = 2, or without convergence, there are
+// none. Nor is there a column that is not known to half a dex on either side.
 func (o Fit) Columns() []abundance.Column {
 	r := o.Result
 	scale := 1.0
@@ -179,6 +195,9 @@ func (o Fit) Columns() []abundance.Column {
 	var out []abundance.Column
 	for _, t := range r.Totals {
 		n := t.LogN
+		if vaguely(n) {
+			continue
+		}
 		if scale > 1 && n.Kind() == "value" {
 			n = n.Add(budget.Shift{Cause: budget.Structure, D: n.Err() * math.Sqrt(scale*scale-1)})
 		}
