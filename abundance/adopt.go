@@ -21,7 +21,7 @@ const disagree = 2
 //     depth, whichever has the smaller total error; several lines are averaged
 //     with weights 1/σ², and what they share (f-value, continuum) stays shared.
 //     Lines that are blended, in a telluric or stellar line, partly filled or
-//     only marginally detected count only where no clean line is left;
+//     only marginally detected count only where no clean line is left, and no fit;
 //  2. a fit through the instrument's profile;
 //  3. a doublet-corrected optical depth;
 //  4. a growth curve;
@@ -79,7 +79,7 @@ func byRule(cols []Column) Column {
 	}
 	var refusals []string
 	for _, m := range []struct{ method, why string }{
-		{MethodFit, "no unsaturated line: fit with the instrument's profile"},
+		{MethodFit, "no clean unsaturated line: fit with the instrument's profile"},
 		{MethodDoublet, "no unsaturated line and no fit: optical depths of a doublet, corrected for saturation"},
 		{MethodGrowth, "no unsaturated line and no fit: growth curve"},
 		{MethodSum, "sum over levels"},
@@ -154,6 +154,9 @@ func byLines(cols []Column) (Column, bool) {
 	clean := slices.DeleteFunc(slices.Clone(lines), func(c Column) bool { return suspect(c.LogN) != 0 })
 	doubt := ""
 	if len(clean) == 0 {
+		if slices.ContainsFunc(cols, func(c Column) bool { return c.Method == MethodFit && isValue(c.LogN) }) {
+			return Column{}, false
+		}
 		clean = lines
 		var all budget.Flag
 		for _, c := range lines {
