@@ -2,7 +2,6 @@ package report
 
 import (
 	"fmt"
-	"math"
 
 	"gonum.org/v1/plot/text"
 	"gonum.org/v1/plot/vg"
@@ -109,44 +108,14 @@ func (s *stack) blockHeight() float64 {
 	return headRow*float64(s.headRows) + s.flux() + s.na() + blockGap
 }
 
-func (s *stack) size() (w, h vg.Length) {
-	w = oneColumn
-	if s.cols == 2 {
-		w = twoColumn
-	}
-	return w, vg.Points(s.top() + float64(s.rows)*s.blockHeight() + axisBelow)
+func (s *stack) sheet() sheet {
+	return sheet{title: s.title, note: s.note, xLabel: s.xLabel, key: s.key, cols: s.cols, rows: s.rows, blocks: len(s.blocks),
+		top: s.top(), height: s.blockHeight(), wide: s.wide,
+		yLabels: []string{"F / F_{c}; below: N_{a}(v) in cm^{−2} (km s^{−1})^{−1}", "F / F_{c}; below: N_{a}(v)"}}
 }
 
+func (s *stack) size() (w, h vg.Length) { return s.sheet().size() }
+
 func (s *stack) draw(c draw.Canvas) {
-	y := c.Max.Y - vg.Points(4)
-	left := c.Min.X + vg.Points(marginRight)
-	c.FillText(heavy(letters(titleSize, ink, text.XLeft, text.YTop)), vg.Point{X: left, Y: y}, s.title)
-	sty := letters(textSize, ink, text.XRight, text.YTop)
-	if width(heavy(letters(titleSize, ink, 0, 0)), s.title)+width(sty, s.note)+vg.Points(12) < c.Max.X-c.Min.X-vg.Points(2*marginRight) {
-		c.FillText(sty, vg.Point{X: c.Max.X - vg.Points(marginRight), Y: y - vg.Points(1)}, s.note)
-	}
-	drawKey(c, s.key, vg.Point{X: left, Y: y - vg.Points(titleSize+5)})
-	column := (c.Max.X - c.Min.X) / vg.Length(s.cols)
-	top := c.Max.Y - vg.Points(s.top())
-	for k := range s.cols {
-		first, last := k*s.rows, min((k+1)*s.rows, len(s.blocks))
-		if first >= last {
-			break
-		}
-		x := c.Min.X + vg.Length(k)*column
-		for i := first; i < last; i++ {
-			at := vg.Point{X: x + vg.Points(marginLeft), Y: top - vg.Points(float64(i-first)*s.blockHeight())}
-			s.drawBlock(c, s.blocks[i], at, i == last-1)
-		}
-		below := top - vg.Points(float64(last-first)*s.blockHeight()-blockGap)
-		c.FillText(letters(textSize, ink, text.XCenter, text.YTop),
-			vg.Point{X: x + vg.Points(marginLeft) + s.wide/2, Y: below - vg.Points(11)}, s.xLabel)
-		side := letters(textSize, ink, text.XCenter, text.YTop)
-		side.Rotation = math.Pi / 2
-		words := "F / F_{c}; below: N_{a}(v) in cm^{−2} (km s^{−1})^{−1}"
-		if width(side, words) > top-below {
-			words = "F / F_{c}; below: N_{a}(v)"
-		}
-		c.FillText(side, vg.Point{X: x + vg.Points(2), Y: (top + below) / 2}, words)
-	}
+	s.sheet().draw(c, func(i int, at vg.Point, lowest bool) { s.drawBlock(c, s.blocks[i], at, lowest) })
 }
