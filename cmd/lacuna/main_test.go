@@ -104,6 +104,8 @@ var (
 	demoSaid result
 )
 
+const testLocale = "C.UTF-8"
+
 // demo runs the demo once for all tests and returns its folder.
 func demo(t testing.TB) string {
 	t.Helper()
@@ -115,7 +117,11 @@ func demo(t testing.TB) string {
 		if err := os.Chdir(filepath.Dir(demoDir)); err != nil {
 			t.Fatal(err)
 		}
+		// Whichever test comes first, also one that sets another locale.
+		locale := os.Getenv("LC_ALL")
+		os.Setenv("LC_ALL", testLocale)
 		demoSaid = lacuna(t, "demo")
+		os.Setenv("LC_ALL", locale)
 		if err := os.Chdir(here); err != nil {
 			t.Fatal(err)
 		}
@@ -128,7 +134,7 @@ func demo(t testing.TB) string {
 
 func TestMain(m *testing.M) {
 	// What is printed must not depend on the terminal of whoever runs the tests.
-	os.Setenv("LC_ALL", "C.UTF-8")
+	os.Setenv("LC_ALL", testLocale)
 	dir, err := os.MkdirTemp("", "lacuna-test-")
 	if err != nil {
 		fmt.Fprintln(os.Stderr, err)
