@@ -80,7 +80,7 @@ const unkept = 1e4
 // no bounds). x is not changed. A Workspace, kept by one goroutine and given again,
 // saves the memory of the iteration; nil makes a new one.
 //
-// Method: Levenberg 1944 and Marquardt 1963, in the QR form of Moré 1978 (Lecture
+// Method: Levenberg 1944 and Marquardt 1963, in the QR form of Moré 1978 (Lect.
 // Notes in Mathematics 630, 105; from memory): J = QR once an iteration, each
 // damping λ solves the small problem min |R p + Qᵀr|² + λ |D p|², D the largest
 // norms of the columns so far. λ follows the gain ratio (Nielsen 1999, IMM-REP-1999-05; from
